@@ -16,8 +16,8 @@ CAUTIONS = (
     "Boundaries between borings are inferred; ground may differ between borings and between samples.",
     "Values are as good as the tests behind them; water is as on its date.",
     "Preliminary: for review by a licensed engineer. Local codes and the contract govern.",
-    "Quantities are for planning. Not for construction, payment or trench safety, where the competent person "
-    "on site decides.",
+    "Quantities are for planning.",
+    "Not for construction, payment or trench safety, where the competent person on site decides.",
 )
 
 

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -33,9 +34,7 @@ class Check:
     advice: str
     severity: str = ""
 
-    def rows(
-        self, table: pd.DataFrame, mask: np.ndarray | pd.Series, heading: object, found: object
-    ) -> pd.DataFrame:
+    def rows(self, table: pd.DataFrame, mask: np.ndarray | pd.Series, heading: object, found: object) -> pd.DataFrame:
         """Return one finding for each row of `table` where `mask` is true.
 
         Parameters
@@ -68,7 +67,7 @@ class Check:
         return self.rows(table, np.array([True]), heading, str(found))
 
 
-def _picked(value: object, picked: np.ndarray) -> object:
+def _picked(value: object, picked: np.ndarray) -> Any:
     if isinstance(value, str):
         return value
     return np.asarray(value, dtype=object)[picked]

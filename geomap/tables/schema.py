@@ -79,12 +79,12 @@ def _toml(name: str) -> dict[str, Any]:
 @functools.cache
 def columns() -> Mapping[str, Column]:
     """Return every column of `columns.toml` by name."""
-    return MappingProxyType(
-        {
-            name: Column(name, **{k: tuple(v) if isinstance(v, list) else v for k, v in entry.items()})
-            for name, entry in _toml("columns.toml").items()
-        }
-    )
+    return MappingProxyType({name: _column(name, entry) for name, entry in _toml("columns.toml").items()})
+
+
+def _column(name: str, entry: Mapping[str, Any]) -> Column:
+    values: dict[str, Any] = {key: tuple(v) if isinstance(v, list) else v for key, v in entry.items()}
+    return Column(name=name, **values)
 
 
 def _layout(name: str, entry: Mapping[str, Any]) -> Layout:

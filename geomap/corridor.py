@@ -1,0 +1,342 @@
+"""The corridor file: TOML in, a frozen :class:`Corridor` out. This module alone knows its keys.
+
+A section that geomap gains is declared here and nowhere else; `corridor_text` makes the messages, and the commented
+file of ``geomap new``, from the same declarations.
+"""
+
+from __future__ import annotations
+
+import tomllib
+from collections.abc import Collection, Mapping
+from pathlib import Path
+from typing import Literal
+
+from pydantic import BaseModel, ConfigDict, Field, ValidationError
+
+from geomap.corridor_text import place, sentence, unknown_key
+from geomap.errors import UsageError, problem
+from geomap.registry import no_such_name
+from geomap.tables import schema
+
+FILE_NAME = "corridor.toml"
+
+
+class _Section(BaseModel):
+    model_config = ConfigDict(extra="forbid", frozen=True)
+
+
+class About(_Section):
+    """Section ``[corridor]``."""
+
+    name: str = Field(min_length=1, description="name of the corridor, on every output", examples=["New corridor"])
+    use: Literal["road", "pipeline"] = Field("road", description="road or pipeline")
+    crs: str = Field(description="projected; tables may name their own and are transformed", examples=["EPSG:32630"])
+    vertical_datum: str = Field("", description="what levels are measured from: a code or free text")
+    half_width_m: float = Field(75.0, gt=0, description="borings farther off are reported and left out")
+    length_unit: Literal["m", "ft", "us-ft"] = Field(
+        "m", description="m, ft or us-ft: for headings that state no unit, and for the outputs people read"
+    )
+    chainage_format: Literal["0+000", "0+00"] = Field("0+000", description="0+000 (meters) or 0+00 (feet)")
+    issue: str = Field("", description="stamped on every output", examples=["A, for review"])
+
+
+class Equation(_Section):
+    """One chainage equation."""
+
+    back: float | str
+    ahead: float | str
+
+
+class _File(_Section):
+    file: str | list[str] = Field(description="file, or a list of files", examples=[""])
+    sheet: str = Field("", description="sheet of a workbook or layer of a GeoPackage, where there are several")
+    crs: str = Field("", description="coordinate system of the file, where it differs from the corridor's")
+    columns: dict[str, str] = Field(
+        default_factory=dict,
+        description="headings that geomap does not know: its column = your heading",
+        examples=[{"boring": "Hole ref"}],
+    )
+
+    @property
+    def files(self) -> list[str]:
+        """The file names as a list."""
+        return [self.file] if isinstance(self.file, str) else list(self.file)
+
+
+class Alignment(_File):
+    """Section ``[alignment]``."""
+
+    file: str = Field(description="file of the line", examples=["alignment.csv"])
+    start_chainage: float | str = Field(0.0, description="chainage at the start of the line")
+    equations: list[Equation] = Field(
+        default_factory=list,
+        description="back is the chainage reached, ahead the one that goes on from there",
+        examples=[[{"back": 1200.0, "ahead": 1250.0}]],
+    )
+    grid_to_ground: float = Field(1.0, gt=0.9, lt=1.1, description="ground distance over grid distance")
+
+
+class Borings(_File):
+    """Section ``[borings]``."""
+
+    file: str | list[str] = Field(description="file, or a list of files", examples=["borings.csv"])
+
+
+class Samples(_File):
+    """Section ``[samples]``."""
+
+    file: str | list[str] = Field(description="file, or a list of files", examples=["samples.csv"])
+    join_tolerance_m: float = Field(
+        0.15, ge=0, le=2, description="tests of one boring within this depth of each other are one specimen"
+    )
+    peat_organic_pct: float | None = Field(
+        None,
+        gt=0,
+        le=100,
+        description="organic content above which a soil is peat (PT, A-8); absent: by eye only",
+        examples=[30.0],
+    )
+
+
+class Gradations(_File):
+    """Section ``[gradations]``."""
+
+    file: str | list[str] = Field(description="file, or a list of files", examples=["gradations.csv"])
+
+
+class Strata(_File):
+    """Section ``[strata]``."""
+
+    file: str | list[str] = Field(description="file, or a list of files", examples=["strata.csv"])
+
+
+class Ground(_File):
+    """Section ``[ground]``."""
+
+    file: str | list[str] = Field(description="file, or a list of files", examples=["ground.csv"])
+
+
+class Formation(_File):
+    """Section ``[formation]``."""
+
+    file: str | list[str] = Field(description="file, or a list of files", examples=["formation.csv"])
+    reference: Literal["formation", "finished_level", "invert", "crown", "cover", "ground"] = Field(
+        description="what the level is: formation, finished_level, invert, crown, cover or ground",
+        examples=["formation"],
+    )
+    construction_thickness_m: float = Field(
+        0.0, ge=0, le=10, description="taken off finished_level; bedding for a pipe; topsoil strip for ground"
+    )
+    pipe_diameter_m: float | None = Field(
+        None, gt=0, le=20, description="outside diameter, for crown and cover", examples=[0.6]
+    )
+
+
+class Fill(_Section):
+    """Section ``[fill]``."""
+
+    group: str = Field(description="its USCS symbol", examples=["GM"])
+    cbr_pct: float | None = Field(
+        None, gt=0, le=200, description="its design CBR, kept in the run record", examples=[15.0]
+    )
+
+
+class Subgrade(_Section):
+    """Section ``[subgrade]``."""
+
+    rules: list[str] = Field(
+        default=["general_subgrade"], min_length=1, description="rule sets by name or file; the worst governs"
+    )
+    depth_m: float = Field(1.0, gt=0, le=20, description="design zone below formation")
+    width_m: float = Field(12.0, gt=0, le=500, description="width of the formation")
+    side_slope: float = Field(1.0, ge=0, le=10, description="horizontal to vertical, for removal")
+
+
+class Profile(_Section):
+    """Section ``[profile]``."""
+
+    step_m: float = Field(10.0, gt=0, le=1000, description="length of a step")
+    thickness_m: float = Field(0.25, gt=0.01, le=10, description="thickness of a cell")
+    depth_m: float = Field(6.0, gt=0, le=200, description="depth below ground, at least")
+    systems: list[str] = Field(
+        default=["astm_d2487", "aashto_m145"],
+        min_length=1,
+        description="classification systems, the first one leads",
+    )
+
+
+class Estimation(_Section):
+    """Section ``[estimation]``."""
+
+    realizations: int = Field(200, ge=20, le=10_000, description="number of draws")
+    seed: int = Field(1, ge=0, description="the same seed gives the same draws")
+    horizontal_range_m: float | None = Field(
+        None, gt=0, description="range along the line; absent: a stated default", examples=[200.0]
+    )
+    vertical_range_m: float | None = Field(
+        None, gt=0, description="range in depth; absent: a stated default", examples=[2.0]
+    )
+
+
+class Outputs(_Section):
+    """Section ``[outputs]``."""
+
+    folder: str = Field("outputs", description="folder for the outputs")
+    products: list[str] = Field(
+        default=["geopackage", "web_map", "schedules"], min_length=1, description="what to write"
+    )
+
+
+class Corridor(_Section):
+    """One corridor file, checked; `path` is the file itself."""
+
+    corridor: About = Field(description="The job")
+    alignment: Alignment = Field(description="The line: GeoJSON, GeoPackage, Shapefile, or a table of x, y")
+    borings: Borings = Field(description="Borings and trial pits: where they are and how deep")
+    samples: Samples = Field(description="Samples: field descriptions and laboratory results by depth")
+    gradations: Gradations | None = Field(None, description="Gradation curves, one row for each sieve (optional)")
+    strata: Strata | None = Field(
+        None,
+        description="Layers as logged; soils of one origin or unit never vote for another (optional)",
+    )
+    ground: Ground | None = Field(
+        None, description="Ground levels along the line (optional; absent: from collar levels, and said so)"
+    )
+    formation: Formation | None = Field(
+        None, description="Design levels along the line (optional; absent: soil groups by depth only)"
+    )
+    fill: Fill | None = Field(
+        None, description="Imported material where the design zone lies in embankment (optional; absent: not assessed)"
+    )
+    subgrade: Subgrade = Field(default_factory=Subgrade, description="How the subgrade is judged")
+    profile: Profile = Field(default_factory=Profile, description="The profile along the line")
+    estimation: Estimation = Field(default_factory=Estimation, description="Estimation between borings")
+    outputs: Outputs = Field(
+        default_factory=Outputs, description="Where the outputs go; the only path that may leave this folder"
+    )
+    path: Path
+
+    @property
+    def folder(self) -> Path:
+        """Folder of the corridor file."""
+        return self.path.parent
+
+    @property
+    def output_folder(self) -> Path:
+        """Folder for the outputs."""
+        return (self.folder / self.outputs.folder).resolve()
+
+    def tables(self) -> dict[str, _File]:
+        """Return the sections that name input tables, by section name, in the order of the file."""
+        return {name: part for name, part in self if isinstance(part, _File) and name != "alignment"}
+
+    def files(self) -> list[Path]:
+        """Return every input file, the corridor file first."""
+        names = [n for part in (self.alignment, *self.tables().values()) for n in part.files]
+        return [self.path, *(self.folder / n for n in names)]
+
+
+def read_corridor(path: str | Path, choices: Mapping[str, Collection[str]]) -> Corridor:
+    """Read and check a corridor file.
+
+    Parameters
+    ----------
+    path
+        The file, or a folder that holds ``corridor.toml``.
+    choices
+        The names known here by key: ``systems``, ``rules``, ``products``.
+
+    Raises
+    ------
+    UsageError
+        The file is missing or wrong. The text has one line for each problem, with its line number, what was
+        found, what is allowed, and the nearest known word.
+    """
+    given = Path(path)
+    file = given / FILE_NAME if given.is_dir() else given
+    try:
+        text = file.read_text("utf-8")
+        data = tomllib.loads(text)
+    except FileNotFoundError:
+        raise UsageError(
+            problem(
+                str(given),
+                "no such file",
+                f"a corridor file or a folder with {FILE_NAME}",
+                "try `geomap new FOLDER`",
+            )
+        ) from None
+    except (tomllib.TOMLDecodeError, UnicodeDecodeError) as error:
+        raise UsageError(problem(file.name, str(error), "TOML text in UTF-8", "correct the line")) from None
+    except OSError as error:
+        raise UsageError(problem(str(given), error.strerror or error, "a file that can be read", "check it")) from None
+    if "path" in data:
+        raise UsageError(unknown_key(file.name, text, ("path",), Corridor))
+    try:
+        corridor = Corridor(**data, path=file.resolve())
+    except ValidationError as error:
+        raise UsageError(
+            "\n".join(dict.fromkeys(sentence(Corridor, file.name, text, e) for e in error.errors()))
+        ) from None
+    problems = [
+        *_path_problems(corridor, text),
+        *_name_problems(corridor, text, choices),
+        *_map_problems(corridor, text),
+    ]
+    if problems:
+        raise UsageError("\n".join(problems))
+    return corridor
+
+
+def _path_problems(corridor: Corridor, text: str) -> list[str]:
+    found = []
+    for section, part in {"alignment": corridor.alignment, **corridor.tables()}.items():
+        where = place(corridor.path.name, text, (section, "file"))
+        for file in part.files:
+            target = (corridor.folder / file).resolve()
+            if not target.is_relative_to(corridor.folder):
+                found.append(problem(where, file, "a file inside the folder of the corridor file", "copy it there"))
+            elif not target.is_file():
+                found.append(
+                    problem(
+                        where,
+                        file,
+                        "a file that exists",
+                        "correct the name; it is relative to the corridor file",
+                    )
+                )
+    if corridor.output_folder.exists() and not corridor.output_folder.is_dir():
+        where = place(corridor.path.name, text, ("outputs", "folder"))
+        found.append(problem(where, corridor.outputs.folder, "a folder", "name another one"))
+    return found
+
+
+def _name_problems(corridor: Corridor, text: str, choices: Mapping[str, Collection[str]]) -> list[str]:
+    asked = {
+        ("subgrade", "rules"): corridor.subgrade.rules,
+        ("profile", "systems"): corridor.profile.systems,
+        ("outputs", "products"): corridor.outputs.products,
+    }
+    found = []
+    for keys, names in asked.items():
+        where = place(corridor.path.name, text, keys)
+        for name in names:
+            own_file = keys[1] == "rules" and name.endswith(".toml") and (corridor.folder / name).is_file()
+            if name not in choices[keys[1]] and not own_file:
+                found.append(no_such_name(name, choices[keys[1]], where))
+        if len(set(names)) < len(names):
+            found.append(problem(where, ", ".join(names), "each name once", "delete the second one"))
+    return found
+
+
+def _map_problems(corridor: Corridor, text: str) -> list[str]:
+    found = []
+    for section, part in {"alignment": corridor.alignment, **corridor.tables()}.items():
+        name = {"ground": "levels", "formation": "levels", "alignment": "vertices"}.get(section, section)
+        layout = schema.inputs()[name]
+        for key in part.columns:
+            welcome = layout.takes_passing and schema.size_from_passing_column(key) is not None
+            if key not in layout.columns and not welcome:
+                where = place(corridor.path.name, text, (section, "columns", key))
+                found.append(no_such_name(key, layout.columns, where))
+    return found

@@ -1,0 +1,1 @@
+"""Judgments of soil by dated, cited rule sets."""

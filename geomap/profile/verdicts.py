@@ -1,0 +1,119 @@
+"""From probabilities and draws to verdicts along the line.
+
+Verdicts are columns here: nothing in this module knows what makes a soil unsuitable.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
+
+UNSUITABLE_FROM = 0.5  # design, section 7
+SUITABLE_P_UNSUITABLE = 0.1  # design, section 7
+SUITABLE_P_NOT_ASSESSED = 0.2  # design, section 7
+
+
+@dataclass(frozen=True)
+class Scale:
+    """The verdicts: their words in the order of their codes, and their codes from the worst to the best."""
+
+    words: tuple[str, ...]
+    worst_first: tuple[int, ...]
+
+    def column(self, word: str) -> int:
+        """Return the code of a word."""
+        return self.words.index(word)
+
+    @property
+    def rank(self) -> NDArray[np.int8]:
+        """For each code, 0 for the worst."""
+        rank = np.empty(len(self.words), dtype=np.int8)
+        rank[list(self.worst_first)] = np.arange(len(self.words))
+        return rank
+
+
+def suitability(probability: Floats, scale: Scale) -> NDArray[np.object_]:
+    """Return the verdict in a word for each row of probabilities.
+
+    Unsuitable at a probability of unsuitable of 0.5 or more. Suitable only where unsuitable is below 0.1, not
+    assessed below 0.2, and suitable at least as likely as treat. Otherwise treat or not assessed, the likelier.
+
+    Parameters
+    ----------
+    probability
+        Shape (rows, verdicts); rows add to 1.
+    scale
+        The verdicts.
+    """
+    suitable, treat, unsuitable, unknown = (
+        probability[:, scale.column(w)] for w in ("suitable", "treat", "unsuitable", "not assessed")
+    )
+    is_suitable = (unsuitable < SUITABLE_P_UNSUITABLE) & (unknown < SUITABLE_P_NOT_ASSESSED) & (suitable >= treat)
+    words: NDArray[np.object_] = np.select(
+        [unsuitable >= UNSUITABLE_FROM, is_suitable, treat >= unknown],
+        [np.array(w, dtype=object) for w in ("unsuitable", "suitable", "treat")],
+        default=np.array("not assessed", dtype=object),
+    )
+    return words
+
+
+def zone_draws(
+    probability: Floats, in_zone: NDArray[np.bool_], fields: Iterable[NDArray[np.float32]], scale: Scale
+) -> NDArray[np.int8]:
+    """Draw the governing verdict of the design zone of each step, jointly along the line.
+
+    Each realization is one field of uniform values over the profile, correlated as the ground is. A cell takes the
+    verdict in which the field's value falls when the verdicts are stacked from the worst to the best, so neighbors
+    turn bad together; the zone takes the worst of its cells. (Probability field: Srivastava 1992, SPE 24753; from
+    memory.)
+
+    Parameters
+    ----------
+    probability
+        Shape (steps, rows, verdicts).
+    in_zone
+        Cells of the design zone in natural ground, shape (steps, rows).
+    fields
+        One array of shape (steps, rows) for each realization, values in 0 to 1.
+    scale
+        The verdicts.
+
+    Returns
+    -------
+    ndarray
+        Verdict code, shape (steps, realizations). A step without a cell in the zone takes the best verdict.
+    """
+    step, row = np.nonzero(in_zone)
+    limits = np.cumsum(probability[step, row][:, list(scale.worst_first)], axis=1)[:, :-1]
+    order = np.array(scale.worst_first, dtype=np.int8)
+    draws = []
+    for field in fields:
+        rank = (field[step, row][:, None] >= limits).sum(axis=1).astype(np.int8)
+        worst = np.full(len(in_zone), len(order) - 1, dtype=np.int8)
+        np.minimum.at(worst, step, rank)
+        draws.append(order[worst])
+    return np.column_stack(draws)
+
+
+def shares(draws: NDArray[np.int8], verdicts: int) -> Floats:
+    """Return the share of each verdict among the draws of each step, shape (steps, verdicts); rows add to 1."""
+    return np.stack([(draws == code).mean(axis=1) for code in range(verdicts)], axis=1)
+
+
+def governing_rule(rules: Sequence[str], membership: Floats) -> NDArray[np.object_]:
+    """Return for each row the rule with the greatest share.
+
+    Parameters
+    ----------
+    rules
+        Names of the columns of `membership`.
+    membership
+        Share of the soil that each rule decided, shape (rows, rules).
+    """
+    chosen: NDArray[np.object_] = np.array(rules, dtype=object)[membership.argmax(axis=1)]
+    return chosen

@@ -20,6 +20,7 @@ POUND_FORCE_N = POUND_KG * STANDARD_GRAVITY_M_S2
 
 _PCF_KG_M3 = POUND_KG / INTERNATIONAL_FOOT_M**3
 _PSF_KPA = POUND_FORCE_N / INTERNATIONAL_FOOT_M**2 / 1000
+_PSI_KPA = 144 * _PSF_KPA
 
 # house unit -> {spelling, lower case without spaces: factor to the house unit}
 SPELLINGS: Mapping[str, Mapping[str, float]] = MappingProxyType(
@@ -42,7 +43,17 @@ SPELLINGS: Mapping[str, Mapping[str, float]] = MappingProxyType(
             "ussurveyfeet": US_SURVEY_FOOT_M,
             "ftus": US_SURVEY_FOOT_M,
         },
-        "mm": {"mm": 1.0, "um": 0.001, "µm": 0.001, "μm": 0.001, "micron": 0.001, "in": INCH_MM, "inch": INCH_MM},
+        "mm": {
+            "mm": 1.0,
+            "um": 0.001,
+            "µm": 0.001,
+            "μm": 0.001,
+            "micron": 0.001,
+            "microns": 0.001,
+            "in": INCH_MM,
+            "inch": INCH_MM,
+            "inches": INCH_MM,
+        },
         "pct": {"%": 1.0, "pct": 1.0, "percent": 1.0},
         "kg_m3": {
             "kg/m3": 1.0,

@@ -1,0 +1,1 @@
+"""Geostatistics on arrays: covariance models, kriging weights, simulated fields. It knows no soil."""

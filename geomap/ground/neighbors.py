@@ -240,11 +240,12 @@ def _depth_window(row_depth: Floats, points: Points) -> Floats:
 def _domain_prior(points: Points, row_depth: Floats, count: int) -> Floats:
     """Return how common each domain is at each depth, shape (depths, domains); rows add to 1."""
     common = _depth_window(row_depth, points) @ _one_hot(points.domain, count)
-    return common / common.sum(axis=1, keepdims=True)
+    prior: Floats = common / common.sum(axis=1, keepdims=True)
+    return prior
 
 
 def _background(records: Points, row_depth: Floats, count: int) -> Floats:
     """Return the share of each record in the background of its domain at each depth, shape (depths, records)."""
     window = _depth_window(row_depth, records)
     in_domain = window @ _one_hot(records.domain, count)
-    return window / np.maximum(in_domain[:, records.domain], np.finfo(float).tiny)  # type: ignore[no-any-return]
+    return window / np.maximum(in_domain[:, records.domain], np.finfo(float).tiny)

@@ -105,7 +105,7 @@ def rule_set_names() -> list[str]:
     return sorted(f.name.removesuffix(".toml") for f in folder.iterdir() if f.name.endswith(".toml"))
 
 
-def read_rule_set(name: str, folder: Path | None = None, purpose: str = "in_place") -> RuleSet:
+def read_rule_set(name: str, folder: Path | None = None, purpose: str | None = "in_place") -> RuleSet:
     """Read a rule set by name, or a project's own from a file.
 
     Parameters
@@ -115,7 +115,7 @@ def read_rule_set(name: str, folder: Path | None = None, purpose: str = "in_plac
     folder
         Where a file is looked for.
     purpose
-        What it will be used for; one of :data:`PURPOSES`.
+        What it will be used for, one of :data:`PURPOSES`; None where it is only looked at.
 
     Raises
     ------
@@ -130,7 +130,7 @@ def read_rule_set(name: str, folder: Path | None = None, purpose: str = "in_plac
     else:
         text = (resources.files("geomap.ratings") / "rulesets" / f"{name}.toml").read_text("utf-8")
     rule_set = parse_rule_set(text, name)
-    if rule_set.applies_to != purpose:
+    if purpose is not None and rule_set.applies_to != purpose:
         raise UsageError(
             problem(
                 f"rule set {name}", f"applies_to = {rule_set.applies_to}", purpose, "use a set made for this purpose"

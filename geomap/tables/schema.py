@@ -92,7 +92,9 @@ def _layout(name: str, entry: Mapping[str, Any]) -> Layout:
         name=name,
         title=entry["title"],
         meaning=entry["meaning"],
-        columns=tuple(entry["columns"]),
+        columns=tuple(
+            entry["columns"] if "columns" in entry else _toml("layouts.toml")[entry["columns_of"]]["columns"]
+        ),
         key=tuple(entry.get("key", ())),
         required=tuple(entry.get("required", ())),
         geometry=entry.get("geometry"),

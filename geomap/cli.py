@@ -99,23 +99,17 @@ def _progress(quiet: bool) -> Iterator[Callable[[str], None]]:
 def geomap() -> None:
     """Soil groups and subgrade suitability along a road or pipeline corridor.
 
-    \b
-    Start a corridor:   geomap new my_road
-    Check its input:    geomap check my_road
-    Do the whole job:   geomap run my_road
+    Start with `geomap new FOLDER`, look at the input with `geomap check FOLDER`, then `geomap run FOLDER`.
     """
 
 
-@geomap.command()
+@geomap.command(epilog="Example:  geomap run demo_corridor")
 @click.argument("corridor", type=click.Path())
 @_common
 def run(corridor: str, quiet: bool, as_json: bool) -> int:
     """Do the whole job: read, check, classify, estimate, rate, and write the outputs.
 
     CORRIDOR is a corridor file, or a folder that holds corridor.toml.
-
-    \b
-    Example:  geomap run demo_corridor
     """
     from geomap import pipeline
 
@@ -134,16 +128,12 @@ def run(corridor: str, quiet: bool, as_json: bool) -> int:
     return 0
 
 
-@geomap.command()
+@geomap.command(epilog="Example:  geomap check demo_corridor --to findings.xlsx")
 @click.argument("corridor", type=click.Path())
 @click.option("--to", "target", type=click.Path(), help="Save the findings to a CSV or XLSX file.")
 @_common
 def check(corridor: str, target: str | None, quiet: bool, as_json: bool) -> int:
-    """Read and judge the input only, and print the findings; nothing else is written.
-
-    \b
-    Example:  geomap check demo_corridor --to findings.xlsx
-    """
+    """Read and judge the input only, and print the findings; nothing else is written."""
     from geomap import pipeline
 
     with _progress(quiet) as tell:
@@ -163,7 +153,7 @@ def check(corridor: str, target: str | None, quiet: bool, as_json: bool) -> int:
     return 1 if blocks else 0
 
 
-@geomap.command()
+@geomap.command(epilog="Example:  geomap classify lab.xlsx --to classified.csv")
 @click.argument("table", type=click.Path())
 @click.option(
     "--to", "target", type=click.Path(), required=True, help="CSV, XLSX, Parquet or GeoPackage, by its ending."
@@ -172,11 +162,7 @@ def check(corridor: str, target: str | None, quiet: bool, as_json: bool) -> int:
 @click.option("--sheet", default="", help="Sheet of a workbook or layer of a GeoPackage.")
 @_common
 def classify(table: str, target: str, systems: tuple[str, ...], sheet: str, quiet: bool, as_json: bool) -> int:
-    """Classify a table of laboratory results: the same rows in the same order, with the classes added.
-
-    \b
-    Example:  geomap classify lab.xlsx --to classified.csv
-    """
+    """Classify a table of laboratory results: the same rows in the same order, with the classes added."""
     from geomap import pipeline
 
     with _progress(quiet) as tell:
@@ -191,15 +177,11 @@ def classify(table: str, target: str, systems: tuple[str, ...], sheet: str, quie
     return 0
 
 
-@geomap.command()
+@geomap.command(epilog="Example:  geomap new my_road")
 @click.argument("folder", type=click.Path())
 @_common
 def new(folder: str, quiet: bool, as_json: bool) -> int:
-    """Make a folder with a commented corridor file and empty tables to fill in.
-
-    \b
-    Example:  geomap new my_road
-    """
+    """Make a folder with a commented corridor file and empty tables to fill in."""
     from geomap import starter
 
     files = starter.make(Path(folder))
@@ -212,14 +194,10 @@ def new(folder: str, quiet: bool, as_json: bool) -> int:
     return 0
 
 
-@geomap.command(name="list")
+@geomap.command(name="list", epilog="Example:  geomap list")
 @_common
 def list_known(quiet: bool, as_json: bool) -> int:
-    """List the standards, rule sets, file formats and outputs known here, with edition and source.
-
-    \b
-    Example:  geomap list
-    """
+    """List the standards, rule sets, file formats and outputs known here, with edition and source."""
     from geomap import catalog
 
     known = catalog.known()
@@ -253,16 +231,13 @@ def _show_findings(findings: Any, most: int, more_by: str) -> None:
     )
     rank = findings["severity"].map({s: k for k, s in enumerate(SEVERITIES)})
     for row in findings.iloc[rank.argsort(kind="stable")].fillna("").head(most).itertuples():
-        place = ", ".join(
-            str(p) for p in (row.file, row.sheet, row.row_number and f"row {row.row_number}", row.heading) if p
-        )
-        who = " ".join(str(p) for p in (row.boring, row.sample) if p)
-        click.echo(
-            f"  {click.style(row.severity, fg=COLORS[row.severity])} {_plain(place)}{f' ({_plain(who)})' if who else ''}"
-        )
-        click.echo(
-            f"    found {_plain(row.found)!r}; allowed: {row.allowed}; done: {row.action.replace('_', ' ')}; {row.advice}"
-        )
+        number = f"row {row.row_number}" if row.row_number else ""
+        place = ", ".join(str(part) for part in (row.file, row.sheet, number, row.heading) if part)
+        who = " ".join(str(part) for part in (row.boring, row.sample) if part)
+        what = _plain(f"{place} ({who})" if who else place)
+        done = row.action.replace("_", " ")
+        click.echo(f"  {click.style(row.severity, fg=COLORS[row.severity])} {what}")
+        click.echo(f"    found {_plain(row.found)!r}; allowed: {row.allowed}; done: {done}; {row.advice}")
     if len(findings) > most:
         click.echo(f"  ... and {len(findings) - most} more" + (f": {more_by}" if more_by else ""))
 

@@ -34,7 +34,7 @@ ARROWS = {
     "units": set(),
     "errors": set(),
     "geostat": {"errors"},
-    **{stage: LEAVES for stage in STAGES},
+    **dict.fromkeys(STAGES, LEAVES),
     "ground": {"geostat", *LEAVES},
     "profile": {"alignment", *LEAVES},
     "exports": {"results", *LEAVES},

@@ -15,7 +15,7 @@ from geomap.profile.verdicts import Scale, suitability
 
 Floats = NDArray[np.float64]
 
-LEAST_ODDS = 0.005  # design, section 7: symbols less likely are not listed
+LEAST_ODDS = 0.005  # symbols less likely need not be listed
 BELOW_ZONE_M = 1.0  # design, section 5: the profile reaches this far below the design zone
 
 
@@ -118,6 +118,9 @@ def sheet(edges: Floats, levels: Levels, thickness_m: float, depth_m: float, zon
 def odds_text(probability: Floats, symbols: Sequence[str]) -> NDArray[np.object_]:
     """Return the odds of each cell as JSON text, the likeliest symbol first.
 
+    Every symbol of 0.005 or more is listed, and smaller ones until what is left out adds to less than 0.005, so
+    the numbers add to 1 within 0.01 however many symbols there are.
+
     Parameters
     ----------
     probability
@@ -128,15 +131,18 @@ def odds_text(probability: Floats, symbols: Sequence[str]) -> NDArray[np.object_
     Examples
     --------
     >>> odds_text(np.array([[0.2499, 0.7471, 0.003]]), ["CL", "CH", "SM"]).tolist()
-    ['{"CH": 0.747, "CL": 0.25}']
+    ['{"CH": 0.7471, "CL": 0.2499}']
     """
-    rounded = np.round(probability, 3)
+    rounded = np.round(probability, 4)
     # Most cells share their odds with others (a whole layer of background, say): each text is made once.
     unique, back = np.unique(rounded, axis=0, return_inverse=True)
     order = np.argsort(-unique, axis=1, kind="stable")
+    ranked = np.take_along_axis(unique, order, axis=1)
+    left = ranked.sum(axis=1, keepdims=True) - ranked.cumsum(axis=1) + ranked  # of this symbol and all after it
+    listed = (ranked >= LEAST_ODDS) | (left >= LEAST_ODDS) & (ranked > 0)
     texts = [
-        json.dumps({symbols[k]: float(row[k]) for k in ranks if row[k] >= LEAST_ODDS})
-        for row, ranks in zip(unique, order, strict=True)
+        json.dumps({symbols[k]: float(p) for k, p in zip(ranks[keep], row[keep], strict=True)})
+        for ranks, row, keep in zip(order, ranked, listed, strict=True)
     ]
     return np.array(texts, dtype=object)[back.ravel()]
 

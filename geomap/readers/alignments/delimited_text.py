@@ -1,0 +1,20 @@
+"""The alignment as vertices x, y in order, in text with a delimiter."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from geomap.readers import raw_tables
+from geomap.readers.alignments.lines import RawLine, line_of_table
+from geomap.readers.delimited import SUFFIXES
+from geomap.readers.options import TableOptions
+
+NAME = "delimited_text"
+TITLE = "Text table of vertices in order: x, y"
+
+__all__ = ["NAME", "SUFFIXES", "TITLE", "read"]
+
+
+def read(path: Path, options: TableOptions) -> RawLine:
+    """Return the line through the vertices; see :class:`geomap.readers.alignments.LineFormat`."""
+    return line_of_table(raw_tables.from_delimited(path, "vertices", options))

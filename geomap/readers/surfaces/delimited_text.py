@@ -1,0 +1,21 @@
+"""Levels in text with a delimiter."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from geomap.readers import raw_tables
+from geomap.readers.delimited import SUFFIXES
+from geomap.readers.options import TableOptions
+from geomap.readers.surfaces.places import with_place
+from geomap.tables.raw import RawTable
+
+NAME = "delimited_text"
+TITLE = "Levels in a text table: chainage or distance, level"
+
+__all__ = ["NAME", "SUFFIXES", "TITLE", "read"]
+
+
+def read(path: Path, layout: str, options: TableOptions) -> RawTable:
+    """Return the table of levels of a text file; see :class:`geomap.readers.borings.TableFormat`."""
+    return with_place(raw_tables.from_delimited(path, layout, options))

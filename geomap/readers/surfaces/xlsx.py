@@ -1,0 +1,21 @@
+"""Levels in a sheet of an XLSX workbook."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from geomap.readers import raw_tables
+from geomap.readers.options import TableOptions
+from geomap.readers.surfaces.places import with_place
+from geomap.readers.workbooks import SUFFIXES
+from geomap.tables.raw import RawTable
+
+NAME = "xlsx"
+TITLE = "Levels in an Office Open XML workbook: chainage or distance, level"
+
+__all__ = ["NAME", "SUFFIXES", "TITLE", "read"]
+
+
+def read(path: Path, layout: str, options: TableOptions) -> RawTable:
+    """Return the table of levels of one sheet; see :class:`geomap.readers.borings.TableFormat`."""
+    return with_place(raw_tables.from_workbook(path, layout, options))

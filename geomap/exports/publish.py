@@ -37,8 +37,11 @@ _REFUSAL_NAMES = (
     *("ENAMETOOLONG", "ENOSPC", "ENOTDIR", "EPERM", "EROFS", "ETXTBSY"),
 )
 _REFUSALS = frozenset(getattr(errno, name) for name in _REFUSAL_NAMES if hasattr(errno, name))
-_DATABASE_REFUSALS = frozenset(
-    {sqlite3.SQLITE_CANTOPEN, sqlite3.SQLITE_FULL, sqlite3.SQLITE_IOERR, sqlite3.SQLITE_PERM, sqlite3.SQLITE_READONLY}
+_DATABASE_REFUSALS = frozenset(  # busy: in a folder of our own, a file system that cannot lock
+    {
+        *(sqlite3.SQLITE_BUSY, sqlite3.SQLITE_CANTOPEN, sqlite3.SQLITE_FULL),
+        *(sqlite3.SQLITE_IOERR, sqlite3.SQLITE_PERM, sqlite3.SQLITE_READONLY),
+    }
 )
 
 

@@ -9,6 +9,7 @@ import pytest
 from numpy.typing import NDArray
 
 from geomap.exports import palette
+from geomap.soils.systems import SYSTEMS, System
 from tests.unit.exports.sample import AASHTO, USCS, VERDICTS
 
 # Machado, Oliveira and Fernandes 2009, "A Physiologically-based Model for Simulation of Color Vision Deficiency",
@@ -146,9 +147,9 @@ def test_every_hatch_can_be_drawn(system: str) -> None:
         assert palette.hatch_path(hatch).count("M") == sum(letter != "_" for letter in hatch)
 
 
-def test_every_symbol_of_both_standards_has_a_sign() -> None:
-    assert set(palette._SIGNS["astm_d2487"]) == set(USCS)
-    assert set(palette._SIGNS["aashto_m145"]) == set(AASHTO)
+@pytest.mark.parametrize("system", SYSTEMS, ids=lambda system: system.NAME)
+def test_every_symbol_of_every_system_has_a_sign(system: System) -> None:
+    assert set(palette._SIGNS[system.NAME]) == set(system.SYMBOLS)
 
 
 def test_anything_unknown_is_gray_and_plain() -> None:

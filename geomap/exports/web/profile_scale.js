@@ -1,0 +1,84 @@
+// Where things stand in the profile: the visible stretch, the visible levels, and the pixels for both.
+
+const LEAST_STRETCH = 40; // meters: closer than this there is nothing more to see
+const BAND_HEIGHT = 17;
+
+function makeProfileScale(data) {
+  const { cells, borings } = data;
+  const deepest = cells.bases.length ? cells.bases[cells.bases.length - 1] : 0;
+  const groundOf = (column) => cells.ground[column] ?? 0;
+  const scale = { from: 0, to: data.length, byDepth: false, width: 0, height: 0 };
+
+  scale.resize = (width, height) => {
+    scale.width = width;
+    scale.height = height;
+    const narrow = width < 520;
+    scale.bands = data.hasFormation ? ["cutFill", "suitability", "evidence"] : ["evidence"];
+    scale.nameRows = narrow ? 2 : 3;
+    scale.left = narrow ? 62 : 74;
+    scale.right = width - 14;
+    scale.top = 8;
+    scale.bottom = height - 24 - scale.bands.length * BAND_HEIGHT - 4;
+  };
+
+  // A level as it is plotted: above the datum, or relative to the ground above it.
+  scale.plotted = (level, distance) => (scale.byDepth ? level - (data.groundAt(distance) ?? 0) : level);
+  scale.topOf = (column) => (scale.byDepth ? 0 : groundOf(column));
+  scale.boringTop = (number) => (scale.byDepth ? 0 : (borings.ground[number] ?? data.groundAt(borings.distance[number]) ?? 0));
+
+  // Levels follow the visible stretch: hills far away must not flatten the soil in view.
+  scale.fitLevels = () => {
+    let low = Infinity;
+    let high = -Infinity;
+    const include = (level) => {
+      if (level === null || !Number.isFinite(level)) return;
+      low = Math.min(low, level);
+      high = Math.max(high, level);
+    };
+    const first = data.columnAt(scale.from);
+    const last = data.columnAt(scale.to);
+    for (let column = first; column <= last && column < cells.from.length; column += 1) {
+      include(scale.topOf(column));
+      include(scale.topOf(column) - deepest);
+    }
+    data.ground.distance.forEach((distance, i) => {
+      if (distance < scale.from || distance > scale.to || data.ground.formation[i] === null) return;
+      const formation = scale.plotted(data.ground.formation[i], distance);
+      include(formation);
+      if (data.corridor.zoneDepth) include(formation - data.corridor.zoneDepth);
+    });
+    borings.distance.forEach((distance, i) => {
+      if (distance === null || distance < scale.from || distance > scale.to || borings.used[i] !== 1) return;
+      include(scale.boringTop(i));
+      include(scale.boringTop(i) - (borings.depth[i] || 0));
+    });
+    if (low > high) [low, high] = [0, 1];
+    const air = Math.max((high - low) * 0.05, 0.2);
+    scale.low = low - air;
+    scale.high = high + air;
+  };
+
+  scale.show = (from, to) => {
+    const width = Math.min(Math.max(to - from, Math.min(LEAST_STRETCH, data.length)), data.length);
+    const start = Math.min(Math.max((from + to - width) / 2, 0), data.length - width);
+    scale.from = start;
+    scale.to = start + width;
+    scale.fitLevels();
+  };
+
+  scale.x = (distance) => scale.left + ((distance - scale.from) / (scale.to - scale.from)) * (scale.right - scale.left);
+  scale.y = (level) => scale.top + ((scale.high - level) / (scale.high - scale.low)) * (scale.bottom - scale.top);
+  scale.distance = (x) => scale.from + ((x - scale.left) / (scale.right - scale.left)) * (scale.to - scale.from);
+  scale.level = (y) => scale.high - ((y - scale.top) / (scale.bottom - scale.top)) * (scale.high - scale.low);
+  scale.metersPerPixel = () => (scale.to - scale.from) / (scale.right - scale.left);
+  scale.exaggeration = () => (scale.metersPerPixel() * (scale.bottom - scale.top)) / (scale.high - scale.low);
+
+  // Depth below ground under a pixel, or null above the ground and below the deepest cell.
+  scale.depthAt = (distance, y) => {
+    if (y < scale.top || y > scale.bottom) return null;
+    const depth = scale.topOf(data.columnAt(distance)) - scale.level(y);
+    return depth < 0 || depth > deepest ? null : depth;
+  };
+  scale.bandTop = (row) => scale.bottom + 4 + row * BAND_HEIGHT;
+  return scale;
+}

@@ -70,6 +70,7 @@ SPELLINGS: Mapping[str, Mapping[str, float]] = MappingProxyType(
             "kpa": 1.0,
             "kn/m2": 1.0,
             "mpa": 1000.0,
+            "psi": 144 * _PSF_KPA,
             "psf": _PSF_KPA,
             "ksf": 1000 * _PSF_KPA,
             "tsf": 2000 * _PSF_KPA,

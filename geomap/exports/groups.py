@@ -11,10 +11,9 @@ SYMBOL_COLUMN = {"astm_d2487": "uscs_symbol", "aashto_m145": "aashto_group", "us
 
 
 def first_system(results: Results) -> str:
-    """Return the system whose symbols stand in ``soil_group``: the first that the corridor asks for."""
-    asked = [name.strip() for name in results.run_value("systems").split(",")]
+    """Return the system whose symbols stand in ``soil_group``: the first of the legend, as the corridor asks."""
     known = [name for name in results.legend["system"].unique() if name in SYMBOL_COLUMN]
-    return next((name for name in asked if name in known), known[0] if known else "astm_d2487")
+    return known[0] if known else next(iter(SYMBOL_COLUMN))
 
 
 def symbol_systems(results: Results) -> Mapping[str, str]:

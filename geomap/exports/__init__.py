@@ -6,12 +6,15 @@ from pathlib import Path
 from typing import Protocol
 
 from geomap.exports import geopackage, schedules, web_map
-from geomap.registry import Named
 from geomap.results import Results
 
 
-class Export(Named, Protocol):
+class Export(Protocol):
     """One kind of output: in practice a module."""
+
+    @property
+    def NAME(self) -> str:  # noqa: N802 - a module constant
+        """Name by which a corridor file asks for it."""
 
     @property
     def TITLE(self) -> str:  # noqa: N802 - a module constant

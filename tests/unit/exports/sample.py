@@ -338,14 +338,15 @@ def findings_table(first: str) -> pd.DataFrame:
 def run_table() -> pd.DataFrame:
     """Return the run table."""
     values = {
-        "geomap": "0.1.0",
-        "corridor": "corridor.toml",
+        "geomap version": "0.1.0",
+        "corridor half_width_m": "75",
         "sha256 borings.csv": "0" * 64,
         "sha256 samples.csv": "1" * 64,
-        "systems": "astm_d2487, aashto_m145",
-        "rules": "general_subgrade",
-        "step_m": "10",
-        "thickness_m": "0.5",
+        "profile systems": "astm_d2487, aashto_m145",
+        "subgrade rules": "general_subgrade",
+        "subgrade depth_m": "1.0",
+        "profile step_m": "10",
+        "profile thickness_m": "0.5",
         "realizations": str(REALIZATIONS),
         "seed": "1",
         "log_score": "0.412",

@@ -2,7 +2,8 @@
 
 Version 1.3 rather than 1.4, because programs a few years old open it without a warning. The order of the work
 matters: first the layers, by GDAL; then, with that file closed, descriptions, metadata and styles as plain
-SQL tables. The same results give the same bytes.
+SQL tables. The same results give the same bytes. Clause numbers of the standard are from memory; the validator in
+the tests judges the substance.
 
 Days stay text, ``year-month-day``. A DATE column of a GeoPackage holds the very same text; GDAL would declare
 one only through Arrow, which is an optional package, and the type of a column must not hang on that.

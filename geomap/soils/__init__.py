@@ -1,0 +1,1 @@
+"""Soils: gradation, plasticity, specimens, and the classification systems built on them."""

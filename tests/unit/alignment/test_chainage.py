@@ -28,6 +28,14 @@ def test_us_survey_feet_are_used_where_the_corridor_is_in_them() -> None:
     )
 
 
+@pytest.mark.parametrize("label", ["2000000 ft", "2000000 us-ft", "2000000"])
+def test_feet_of_a_label_are_those_of_its_chainage(label: str) -> None:
+    chainage = chainage_from_settings(0.0, form="0+00", length_unit="us-ft")
+    np.testing.assert_allclose(
+        chainage.distance_from_label(label).distance_m, [2_000_000 * US_SURVEY_FOOT_M], rtol=1e-12
+    )
+
+
 def test_with_meters_the_length_unit_does_not_matter() -> None:
     assert chainage_from_settings(length_unit="us-ft").unit_m == 1.0
 

@@ -90,11 +90,17 @@ def test_close_to_the_line_ten_meters_count_in_place_of_the_factor() -> None:
     assert placed(legs, [(0.5, 250)], half_width_m=30.0).loc[0, "second_distance_m"] == pytest.approx(759.0)
 
 
+def test_farther_from_the_line_the_factor_counts() -> None:
+    legs = line_from_vertices([(0, 0), (0, 500), (72, 500), (72, 0)])
+    rows = placed(legs, [(30, 200), (28, 200)], half_width_m=40.0)  # 30 and 42 m; 28 and 44 m
+    assert rows["ambiguous"].tolist() == [True, False]
+
+
 def test_a_straight_line_of_many_vertices_has_no_second_place() -> None:
     line = line_from_vertices(np.column_stack([np.zeros(2001), np.arange(2001.0)]))
-    rows = placed(line, [(70, 1000.3), (-70, 1000), (0, 5), (75, 1999)], half_width_m=5.0)
+    # A stretch of 10 m is within reach of these points, and 2.5 m along the line is far enough apart.
+    rows = placed(line, [(0.3, 1000.3), (-0.3, 1000), (0, 5), (0.5, 1999)], half_width_m=0.5)
     assert not rows["ambiguous"].any()
-    assert not placed(line, [(4, 1000.5), (-4, 1000)], half_width_m=0.5)["ambiguous"].any()
 
 
 def test_a_second_place_may_be_a_vertex_or_an_end() -> None:

@@ -103,6 +103,13 @@ def test_samples_at_one_place_share_one_weight_equally(nugget: float) -> None:
     assert ordinary.estimate[0, 0] == pytest.approx(2.0)
 
 
+def test_a_target_at_one_of_several_samples_at_a_place_is_at_that_place() -> None:
+    points = np.vstack([borings(4), borings(4)[5] + np.array([0, 0, 1e-7])])
+    answer = kriging.simple_kriging(points, points[70:], Model(exponential, 0.4, 1.0, RANGES))
+    assert answer.weights[0, [5, 70]] == pytest.approx([0.5, 0.5], abs=1e-6)
+    assert answer.variance[0] == pytest.approx(0.0, abs=1e-6)
+
+
 def test_a_smooth_model_on_crowded_points_is_still_solved() -> None:
     rng = np.random.default_rng(5)
     points = rng.uniform(0, 1, (300, 2))

@@ -9,6 +9,7 @@ import pytest
 from scipy.stats import kstest
 
 from geomap.errors import InputError
+from geomap.geostat import simulation
 from geomap.geostat.covariances import MODELS
 from geomap.geostat.simulation import GaussianField, probability_field, uniform
 
@@ -49,6 +50,18 @@ def test_the_reported_error_is_the_one_of_the_exact_covariance_of_the_draws(name
     model = MODELS[name](np.sqrt(((at[:, None] - at[None]) ** 2).sum(axis=2)))
     np.testing.assert_allclose(np.abs(covariance - model).max(), field.correlation_error_, atol=1e-5)
     np.testing.assert_allclose(np.diag(covariance), 1.0, atol=1e-5)
+
+
+def test_what_a_model_that_is_not_valid_loses_is_reported_and_the_variance_stays_one(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    # Correlation 1 within half the range and 0 beyond is no covariance in two dimensions.
+    monkeypatch.setattr(simulation, "correlation_named", lambda _: lambda h: (np.asarray(h) < 0.5).astype(float))
+    field = GaussianField("spherical", (60.0, 2.0), SPACING).fit((12, 8))
+    assert field.clipped_share_ > 0.01
+    assert field.correlation_error_ > 0.01
+    drawn = np.stack([field.draw(1, k) for k in range(400)])
+    assert (drawn**2).mean() == pytest.approx(1.0, abs=0.06)
 
 
 def test_a_realization_does_not_depend_on_how_many_are_drawn_nor_on_their_order() -> None:

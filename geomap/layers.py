@@ -1,4 +1,4 @@
-"""The layers of the results, laid out from what the stages found; and the record of the run.
+"""The results laid out from what the stages found: layers, legend, and the record of the run.
 
 Nothing is judged or estimated here: columns are chosen, places are labeled, geometry is attached.
 """
@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import platform
 from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
 from importlib import metadata
 
 import numpy as np
@@ -14,12 +15,121 @@ import pandas as pd
 import shapely
 from numpy.typing import NDArray
 
+from geomap import inputs
 from geomap.corridor import Corridor
-from geomap.results import CAUTIONS
+from geomap.errors import problem
+from geomap.gate import Gate
+from geomap.ground.neighbors import Ranges
+from geomap.profile.cells import Sheet
+from geomap.results import CAUTIONS, Results
 from geomap.tables import schema
 
-Label = Callable[[NDArray[np.float64]], Sequence[str]]
+Label = Callable[[NDArray[np.float64]], "pd.Series[str]"]
+DERIVED = [
+    "cobbles_pct",
+    "boulders_pct",
+    "d10_mm",
+    "d30_mm",
+    "d60_mm",
+    "cu",
+    "cc",
+]  # of the specimen, reported or worked out
+FIXED = "fixed default, common practice, no source"
 LIBRARIES = ("numpy", "scipy", "pandas", "shapely", "pyproj", "geopandas", "pyogrio", "folium")
+
+
+@dataclass(frozen=True)
+class Found:
+    """What the second half of the job found.
+
+    Attributes
+    ----------
+    sheet
+        Where the cells are.
+    ranges
+        The ranges of the estimate and where they come from, in words.
+    steps, cells, trace
+        Tables by step, by cell, and by step and record.
+    draws
+        Verdict codes, shape (steps, realizations).
+    """
+
+    sheet: Sheet
+    ranges: str
+    steps: pd.DataFrame
+    cells: pd.DataFrame
+    trace: pd.DataFrame
+    draws: NDArray[np.int8]
+
+
+def results(gate: Gate, found: Found, verdicts: Sequence[str]) -> Results:
+    """Return the results of a run."""
+    about, taken, sheet = gate.job.corridor.corridor, gate.taken, found.sheet
+    label = gate.chainage.label_from_distance
+    holes = borings(taken.rows("borings"), gate.placed, label)
+    ends = {"from_distance_m": "from_chainage", "to_distance_m": "to_chainage"}
+    subgrade = with_labels(found.steps, label, ends).assign(geometry=gate.line.pieces(gate.edges))
+    ground = pd.DataFrame(
+        {
+            "distance_m": sheet.centers,
+            "ground_level_m": sheet.levels.ground,
+            "formation_level_m": sheet.levels.formation,
+            "width_m": sheet.levels.width,
+            "zone_depth_m": sheet.zone_depth,
+            "ground_basis": gate.levels.ground_basis,
+        }
+    )
+    strata = gate.located(taken.used("strata")) if "strata" in taken else pd.DataFrame()
+    tables = {
+        "alignment": alignment(about.name, gate, ground),
+        "borings": holes,
+        "samples": samples(taken.rows("samples"), gate.judged, holes),
+        "subgrade": layer("subgrade", subgrade),
+        "profile_cells": layer("profile_cells", found.cells),
+        "trace": layer("trace", found.trace),
+        "findings": gate.findings,
+        "ground": ground,
+        "strata": strata.reset_index(drop=True),
+        "counts": gate.counts,
+    }
+    tables["run"] = run_record(gate, found, tables["subgrade"])
+    return Results(
+        name=about.name,
+        use=about.use,
+        issue=about.issue,
+        crs=about.crs,
+        vertical_datum=about.vertical_datum,
+        length_unit=about.length_unit,
+        chainage_format=about.chainage_format,
+        chainage_breaks=gate.chainage.breaks,
+        tables=tables,
+        legend=legend({s.NAME: {n: s.SYMBOL_NAMES[n] for n in s.SYMBOLS} for s in gate.job.systems}, verdicts),
+        draws=found.draws,
+    )
+
+
+def sentences(findings: pd.DataFrame) -> list[str]:
+    """Return each finding as one sentence in the house pattern."""
+    rows = findings.astype(object).where(findings.notna(), "")
+    return [
+        problem(
+            ", ".join(str(p) for p in (r.file, r.sheet, r.row_number and f"row {r.row_number}", r.heading) if p),
+            r.found,
+            r.allowed,
+            r.advice,
+        )
+        for r in rows.itertuples()
+    ]
+
+
+def ranges_in_words(ranges: Ranges, corridor: Corridor) -> str:
+    """Return the ranges of the estimate and whether the user gave them."""
+    given = corridor.estimation
+    parts = [
+        f"{ranges.horizontal:g} m along and across the line ({'given' if given.horizontal_range_m else FIXED})",
+        f"{ranges.vertical:g} m in depth ({'given' if given.vertical_range_m else FIXED})",
+    ]
+    return f"practical ranges {' and '.join(parts)}; nugget {ranges.nugget:g}"
 
 
 def layer(name: str, frame: pd.DataFrame) -> pd.DataFrame:
@@ -42,37 +152,71 @@ def with_labels(frame: pd.DataFrame, label: Label, names: Mapping[str, str]) -> 
     for distance, chainage in names.items():
         known = frame[distance].notna().to_numpy()
         texts = np.full(len(frame), None, dtype=object)
-        texts[known] = label(frame[distance].to_numpy(float)[known])
+        texts[known] = label(frame[distance].to_numpy(float)[known]).to_numpy(object)
         result[chainage] = pd.Series(texts, index=frame.index, dtype="string")
     return result
 
 
-def alignment(
-    corridor: Corridor, line: NDArray[np.float64], length_m: float, ground: pd.DataFrame, label: Label
-) -> pd.DataFrame:
-    """Return the layer ``alignment``.
+def alignment(name: str, gate: Gate, ground: pd.DataFrame) -> pd.DataFrame:
+    """Return the layer ``alignment``: the line, with the level of the ground at each vertex where levels are known.
 
     Parameters
     ----------
-    corridor
-        Names the line.
-    line
-        Vertices in distance, x, y, shape (vertices, 3).
-    length_m
-        Length along the line [m].
+    name
+        Name of the corridor.
+    gate
+        The line and its chainage.
     ground
-        ``distance_m`` and ``ground_level_m`` by step; levels are missing where they are not known.
+        ``distance_m`` and ``ground_level_m`` by step.
+    """
+    line, vertices = gate.line, gate.line.vertices
+    level = ground["ground_level_m"].to_numpy(float)
+    known = np.isfinite(level)
+    if gate.levels.ground_is_known:
+        z = np.interp(line.distance, ground["distance_m"].to_numpy(float)[known], level[known])
+        vertices = np.column_stack([vertices, z])
+    start = gate.chainage.label_from_distance([0.0]).iloc[0]
+    row = {"name": name, "start_chainage": start, "length_m": line.length_m}
+    return layer("alignment", pd.DataFrame([row]).assign(geometry=[shapely.linestrings(vertices)]))
+
+
+def borings(rows: pd.DataFrame, placed: pd.DataFrame, label: Label) -> pd.DataFrame:
+    """Return the layer ``borings``: every boring read, placed where it could be.
+
+    Parameters
+    ----------
+    rows
+        Typed rows with ``status`` and ``reason``.
+    placed
+        ``x``, ``y``, ``distance_m``, ``offset_m``, ``side`` in the system of the corridor, on the index of `rows` as
+        far as they could be placed.
     label
         Chainage labels of distances.
     """
-    level = ground["ground_level_m"].to_numpy(float)
-    known = np.isfinite(level)
-    vertices = line[:, 1:]
-    if known.any():
-        z = np.interp(line[:, 0], ground["distance_m"].to_numpy(float)[known], level[known])
-        vertices = np.column_stack([vertices, z])
-    row = {"name": corridor.corridor.name, "start_chainage": label(np.zeros(1))[0], "length_m": length_m}
-    return layer("alignment", pd.DataFrame([row]).assign(geometry=[shapely.linestrings(vertices)]))
+    names = ["x", "y", "distance_m", "offset_m", "side"]
+    table = rows.drop(columns=names, errors="ignore").join(placed[names])
+    return layer("borings", with_points(with_labels(table, label, {"distance_m": "chainage"})))
+
+
+def samples(rows: pd.DataFrame, judged: pd.DataFrame, holes: pd.DataFrame) -> pd.DataFrame:
+    """Return the layer ``samples``: every sample read; its own tests, then what was derived for its specimen.
+
+    Parameters
+    ----------
+    rows
+        Typed rows with ``status`` and ``reason``.
+    judged
+        Properties, classes and verdicts of the samples used, on the index of `rows`; they win over columns of the
+        same name, but for the limits and other tests of the row itself.
+    holes
+        The layer ``borings``: places of the holes.
+    """
+    derived = [n for n in judged.columns if n not in rows.columns or n in DERIVED]
+    table = rows.drop(columns=DERIVED, errors="ignore").join(judged[derived])
+    where = holes.drop_duplicates("boring").set_index("boring")
+    for name in ("distance_m", "chainage", "offset_m", "geometry"):
+        table[name] = table["boring"].map(where[name])
+    return layer("samples", table)
 
 
 def legend(systems: Mapping[str, Mapping[str, str]], verdicts: Sequence[str]) -> pd.DataFrame:
@@ -97,39 +241,30 @@ def legend(systems: Mapping[str, Mapping[str, str]], verdicts: Sequence[str]) ->
     return table
 
 
-def run_record(
-    corridor: Corridor, fingerprints: Mapping[str, str], sources: Mapping[str, str], subgrade: pd.DataFrame
-) -> pd.DataFrame:
-    """Return the layer ``run``: versions, inputs, standards and rule sets with editions, parameters and totals.
-
-    Parameters
-    ----------
-    corridor
-        The corridor file as read.
-    fingerprints
-        SHA-256 of every input file by name.
-    sources
-        Further entries: standards, rule sets and what the estimate rests on.
-    subgrade
-        The layer of that name, for the totals.
-    """
-    about = corridor.corridor
+def run_record(gate: Gate, found: Found, subgrade: pd.DataFrame) -> pd.DataFrame:
+    """Return the layer ``run``: versions, inputs, standards and rule sets with editions, parameters and totals."""
+    job, corridor = gate.job, gate.job.corridor
     rows: dict[str, object] = {
         "geomap version": metadata.version("geomap"),
         "python version": platform.python_version(),
         **{f"{library} version": metadata.version(library) for library in LIBRARIES},
-        **{f"corridor {key}": value for key, value in about if value not in ("", None)},
-        **{f"sha256 {name}": digest for name, digest in fingerprints.items()},
-        **sources,
+        **{f"corridor {key}": value for key, value in corridor.corridor},
+        **{f"sha256 {name}": digest for name, digest in inputs.fingerprints(job).items()},
+        **{f"system {system.NAME}": f"{system.SOURCE}, {system.EDITION}" for system in job.systems},
+        **{f"rule set {r.name}": f"{r.title}; {r.source}; {r.edition}; {r.flag}" for r in job.rule_sets},
         **{f"subgrade {key}": value for key, value in corridor.subgrade},
         **{f"profile {key}": value for key, value in corridor.profile},
+        "estimation": f"neighbor records, plain form: {found.ranges}. Not fitted to this site.",
         "realizations": corridor.estimation.realizations,
         "seed": corridor.estimation.seed,
+        "ground levels": gate.levels.ground_basis,
+        **{f"fill {key}": value for key, value in corridor.fill or ()},
         **totals(subgrade),
         **{f"caution {number}": text for number, text in enumerate(CAUTIONS, 1)},
     }
-    texts = [", ".join(map(str, v)) if isinstance(v, list) else str(v) for v in rows.values()]
-    return layer("run", pd.DataFrame({"key": list(rows), "value": texts}))
+    kept = {key: value for key, value in rows.items() if value not in ("", None)}
+    texts = [", ".join(map(str, v)) if isinstance(v, list) else str(v) for v in kept.values()]
+    return layer("run", pd.DataFrame({"key": list(kept), "value": texts}))
 
 
 def totals(subgrade: pd.DataFrame) -> dict[str, str]:

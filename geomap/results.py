@@ -76,3 +76,18 @@ class Results:
         run = self.tables["run"]
         found = run.loc[run["key"] == key, "value"]
         return str(found.iloc[0]) if len(found) else ""
+
+    def summary(self) -> dict[str, object]:
+        """Return the answer in short, ready for JSON: lengths, counts, findings by severity, totals of the run."""
+        run = self.tables["run"].set_index("key")["value"]
+        lengths = {key: float(run[key]) for key in run.index if key.startswith("length_")}
+        severities = self.tables["findings"]["severity"].value_counts()
+        return {
+            "name": self.name,
+            "issue": self.issue,
+            **lengths,
+            "tables": self.tables["counts"].to_dict(orient="records"),
+            "findings": {str(word): int(count) for word, count in severities.items()},
+            "estimation": self.run_value("estimation"),
+            "cautions": list(self.cautions),
+        }

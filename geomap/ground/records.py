@@ -51,37 +51,43 @@ def middle_depth(table: pd.DataFrame) -> NDArray[np.float64]:
     return (top + np.where(np.isnan(base), top, base)) / 2
 
 
-def soils(samples: pd.DataFrame, strata: pd.DataFrame) -> pd.DataFrame:
-    """Return the soils to classify: the samples, then the logged layers in which there is no sample.
-
-    Where a sample says nothing of its visual group, origin or unit, it takes them from the layer that holds it.
+def with_log(samples: pd.DataFrame, strata: pd.DataFrame) -> pd.DataFrame:
+    """Return the samples; where one says nothing of its visual group, origin or unit, it takes its layer's.
 
     Parameters
     ----------
     samples, strata
         Tables in the layouts of the same names.
-
-    Returns
-    -------
-    DataFrame
-        Columns of `samples` and ``is_logged`` (true for a layer). The samples keep their index; layers follow.
     """
-    stratum = covering_stratum(samples, strata)
     result = samples.copy()
+    if not len(strata):
+        return result
+    stratum = covering_stratum(samples, strata)
     for name in ("visual_group", "origin", "unit"):
-        taken = strata[name].reset_index(drop=True).reindex(stratum) if len(strata) else pd.Series(dtype="string")
-        taken.index = samples.index if len(strata) else taken.index
-        result[name] = result[name].where(result[name].notna(), taken.reindex(result.index))
-    result["is_logged"] = False
-    bare = strata.iloc[np.setdiff1d(np.arange(len(strata)), stratum)]
-    shared = [name for name in bare.columns if name in samples.columns]
-    layers = bare[shared].set_axis(range(_next(samples.index), _next(samples.index) + len(bare)))
-    layers["is_logged"] = True
-    return pd.concat([result, layers]) if len(layers) else result
+        taken = strata[name].reset_index(drop=True).reindex(stratum).set_axis(samples.index)
+        result[name] = result[name].where(result[name].notna(), taken)
+    return result
 
 
-def _next(index: pd.Index) -> int:
-    return int(index.max()) + 1 if len(index) else 0
+def bare_layers(samples: pd.DataFrame, strata: pd.DataFrame) -> pd.DataFrame:
+    """Return the logged layers in which there is no sample, in the columns of `samples`; their index follows on."""
+    bare = strata.iloc[np.setdiff1d(np.arange(len(strata)), covering_stratum(samples, strata))]
+    first = int(samples.index.max()) + 1 if len(samples) else 0
+    return bare.reindex(columns=samples.columns).set_axis(pd.RangeIndex(first, first + len(bare)))
+
+
+def one_per_specimen(soils: pd.DataFrame) -> pd.DataFrame:
+    """Return one row for each specimen: its first row, over the depths of all its rows; the index is kept.
+
+    Parameters
+    ----------
+    soils
+        ``specimen``, ``top_depth_m``, ``base_depth_m`` and anything else.
+    """
+    groups = soils.groupby("specimen", sort=False)
+    base = soils["base_depth_m"].fillna(soils["top_depth_m"]).groupby(soils["specimen"]).transform("max")
+    whole = soils.assign(top_depth_m=groups["top_depth_m"].transform("min"), base_depth_m=base)
+    return whole.loc[~soils["specimen"].duplicated()]
 
 
 def domains(soils: pd.DataFrame) -> pd.Series:

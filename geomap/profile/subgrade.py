@@ -66,10 +66,13 @@ def subgrade_material(sheet: Sheet) -> NDArray[np.object_]:
     return words
 
 
-def verdict_shares(draws: NDArray[np.int8], material: NDArray[np.object_], fill_verdict: int, scale: Scale) -> Floats:
+def verdict_shares(
+    draws: NDArray[np.int8], material: NDArray[np.object_], fill_verdict: int, not_assessed: int, scale: Scale
+) -> Floats:
     """Return the share of each verdict for each step, with the imported part of the zone counted in.
 
-    Where part of the zone is fill, the worse of the natural draw and the fill's verdict governs.
+    Where part of the zone is fill, the worse of the natural draw and the fill's verdict governs. A step without a
+    formation is not assessed.
 
     Parameters
     ----------
@@ -77,17 +80,17 @@ def verdict_shares(draws: NDArray[np.int8], material: NDArray[np.object_], fill_
         Verdict codes of the natural part, shape (steps, realizations).
     material
         As `subgrade_material` gives it.
-    fill_verdict
-        Code of the verdict on the imported fill.
+    fill_verdict, not_assessed
+        Codes of the verdict on the imported fill, and of "not assessed".
     scale
         The verdicts.
     """
     rank = scale.rank
-    with_fill = np.isin(material, [IMPORTED, MIXED])
     governed = draws.copy()
-    worse = with_fill[:, None] & (rank[fill_verdict] < rank[draws])
+    worse = (material == MIXED)[:, None] & (rank[fill_verdict] < rank[draws])
     governed[worse] = fill_verdict
     governed[material == IMPORTED] = fill_verdict
+    governed[pd.isna(material)] = not_assessed
     return shares(governed, len(scale.words))
 
 

@@ -105,15 +105,22 @@ def shares(draws: NDArray[np.int8], verdicts: int) -> Floats:
     return np.stack([(draws == code).mean(axis=1) for code in range(verdicts)], axis=1)
 
 
-def governing_rule(rules: Sequence[str], membership: Floats) -> NDArray[np.object_]:
-    """Return for each row the rule with the greatest share.
+def governing_rule(
+    rules: Sequence[str], rule_verdict: Sequence[str], membership: Floats, verdict: NDArray[np.object_]
+) -> NDArray[np.object_]:
+    """Return for each step the rule behind its verdict: of the rules that give that verdict, the greatest share.
+
+    Where none gives it (a step may come out as "treat" because it is partly unsuitable), the greatest of all.
 
     Parameters
     ----------
-    rules
-        Names of the columns of `membership`.
+    rules, rule_verdict
+        Names of the columns of `membership`, and the verdict that each gives.
     membership
-        Share of the soil that each rule decided, shape (rows, rules).
+        Share of the soil that each rule decided, shape (steps, rules).
+    verdict
+        Verdict of each step.
     """
-    chosen: NDArray[np.object_] = np.array(rules, dtype=object)[membership.argmax(axis=1)]
+    gives_it = (np.array(rule_verdict, dtype=object) == verdict[:, None]) & (membership > 0)
+    chosen: NDArray[np.object_] = np.array(rules, dtype=object)[(membership + gives_it).argmax(axis=1)]
     return chosen

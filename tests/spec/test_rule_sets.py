@@ -165,4 +165,7 @@ def test_a_rule_set_made_for_fill_cannot_judge_the_ground_in_place(tmp_path: Pat
 def test_every_rule_set_that_ships_can_be_read_and_names_its_source() -> None:
     for name in rules.rule_set_names():
         rule_set = rules.read_rule_set(name, purpose=None)
-        assert rule_set.source and rule_set.edition and rule_set.flag and rule_set.rules
+        assert rule_set.source
+        assert rule_set.edition
+        assert rule_set.flag
+        assert rule_set.rules

@@ -127,11 +127,11 @@ def test_layers_without_a_sample_become_records_and_samples_take_what_the_log_sa
     samples = soils_table([("A", 0.0, 1.0, 1.5, "", "")]).assign(visual_group=None, origin=None, unit=None)
     strata = soils_table([("A", 0.0, 0.0, 0.3, "topsoil", ""), ("A", 0.0, 0.3, 3.0, "natural", "clay")])
     strata = strata.assign(visual_group=["OL", "CL"])
-    table = records.soils(samples, strata)
-    assert table["is_logged"].tolist() == [False, True]
-    assert table["visual_group"].tolist() == ["CL", "OL"]
-    assert table["origin"].tolist() == ["natural", "topsoil"]
-    assert table.index.tolist() == [0, 1]
+    told = records.with_log(samples, strata)
+    assert told[["visual_group", "origin", "unit"]].values.tolist() == [["CL", "natural", "clay"]]
+    bare = records.bare_layers(samples, strata)
+    assert bare[["visual_group", "origin", "top_depth_m"]].values.tolist() == [["OL", "topsoil", 0.0]]
+    assert bare.index.tolist() == [1]
 
 
 @settings(max_examples=25, deadline=None)

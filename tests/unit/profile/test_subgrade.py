@@ -24,7 +24,8 @@ def levels(ground: list[float], formation: list[float]) -> Levels:
 @given(st.floats(0.5, 20_000), st.floats(1, 500))
 def test_steps_tile_the_alignment(length: float, step: float) -> None:
     edges = step_edges(length, step)
-    assert edges[0] == 0 and edges[-1] == length
+    assert edges[0] == 0
+    assert edges[-1] == length
     assert (np.diff(edges) > 0).all()
     assert np.diff(edges).max() <= step * (1 + 1e-9)
 
@@ -91,10 +92,12 @@ def test_cells_that_share_a_field_turn_bad_together_and_independent_ones_do_not(
 
 
 def test_fill_that_is_not_assessed_hides_a_good_natural_part_but_not_a_bad_one() -> None:
-    draws = np.array([[0, 2], [0, 2], [0, 2]], dtype=np.int8)  # suitable once, unsuitable once
-    material = np.array(["natural", "mixed", "imported"], dtype=object)
-    probability = subgrade.verdict_shares(draws, material, 3, SCALE)
-    assert probability.tolist() == [[0.5, 0, 0.5, 0], [0, 0, 0.5, 0.5], [0, 0, 0, 1]]
+    draws = np.array([[0, 2]] * 4, dtype=np.int8)  # suitable once, unsuitable once
+    material = np.array(["natural", "mixed", "imported", None], dtype=object)
+    probability = subgrade.verdict_shares(draws, material, 3, 3, SCALE)
+    assert probability.tolist() == [[0.5, 0, 0.5, 0], [0, 0, 0.5, 0.5], [0, 0, 0, 1], [0, 0, 0, 1]]
+    probability = subgrade.verdict_shares(draws, material, 0, 3, SCALE)
+    assert probability.tolist() == [[0.5, 0, 0.5, 0], [0.5, 0, 0.5, 0], [1, 0, 0, 0], [0, 0, 0, 1]]
 
 
 @given(hnp.arrays(float, (7, 5), elements=st.floats(0.001, 1)))

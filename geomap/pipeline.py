@@ -1,0 +1,139 @@
+"""The job, one call for each stage. No engineering happens here: stages judge, this module hands their tables on."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+import pandas as pd
+from numpy.typing import NDArray
+
+from geomap import inputs, layers, registry
+from geomap.errors import InputError
+from geomap.exports import EXPORTS
+from geomap.exports.publish import publish, staging
+from geomap.gate import Gate, Tell, check, silent
+from geomap.geostat.simulation import probability_field
+from geomap.ground import records
+from geomap.ground.estimate import Estimate, Grid, estimate
+from geomap.ground.neighbors import Ranges
+from geomap.profile import cells, steps, subgrade
+from geomap.profile.verdicts import Scale, zone_draws
+from geomap.ratings import rules
+from geomap.results import Results
+
+SCALE = Scale(rules.VERDICTS, rules.WORST_FIRST)
+NOT_DETERMINED = "n/d"
+
+
+def run_and_write(path: str | Path, tell: Tell = silent) -> tuple[Results, list[Path]]:
+    """Do the whole job and write the outputs; old ones stay until all new ones are complete.
+
+    Raises
+    ------
+    UsageError, InputError
+        As :func:`run`.
+    OutputInUseError
+        An old output is held by another program, or the folder cannot be written.
+    """
+    job = inputs.prepare(path)
+    results = run(path, tell)
+    tell("writing")
+    with staging(job.corridor.output_folder) as folder:
+        place = job.place("outputs", "products")
+        exports = [registry.named(EXPORTS, name, place) for name in job.corridor.outputs.products]
+        staged = [file for export in exports for file in export.write(results, folder)]
+        return results, publish(staged, job.corridor.output_folder)
+
+
+def run(path: str | Path, tell: Tell = silent) -> Results:
+    """Do the whole job in memory and return the results; nothing is written.
+
+    Raises
+    ------
+    UsageError
+        The corridor file is wrong.
+    InputError
+        The input blocks; the text names every finding that does.
+    """
+    gate = check(path, tell)
+    blocking = gate.findings[gate.findings["action"] == "block"]
+    if len(blocking):
+        raise InputError("\n".join(layers.sentences(blocking)))
+    tell("estimating")
+    sheet = lay_out(gate)
+    default, given = Ranges(), gate.job.corridor.estimation
+    ranges = Ranges(given.horizontal_range_m or default.horizontal, given.vertical_range_m or default.vertical)
+    answer = weigh(gate, sheet, ranges)
+    judged = tally(answer, gate)
+    tell("drawing")
+    draws = draw(gate, sheet, ranges, judged)
+    holes = gate.located(gate.taken.used("borings")[["boring"]])
+    table = steps.step_table(sheet, judged, draws, imported(gate), holes, SCALE)
+    trace_weights = steps.trace_zone(sheet).mean_weights(judged.weights)
+    found = layers.Found(
+        sheet=sheet,
+        ranges=layers.ranges_in_words(ranges, gate.job.corridor),
+        steps=table,
+        cells=cells.cell_table(sheet, judged.odds, judged.probability, SCALE, answer.evidence),
+        trace=subgrade.trace_table(trace_weights, answer.records),
+        draws=draws,
+    )
+    return layers.results(gate, found, SCALE.words)
+
+
+def lay_out(gate: Gate) -> cells.Sheet:
+    """Lay out the cells of the profile."""
+    corridor, along = gate.job.corridor, gate.levels
+    levels = cells.Levels(along.ground, along.formation, along.width)
+    profile = corridor.profile
+    return cells.sheet(gate.edges, levels, profile.thickness_m, profile.depth_m, corridor.subgrade.depth_m)
+
+
+def weigh(gate: Gate, sheet: cells.Sheet, ranges: Ranges) -> Estimate:
+    """Weigh the soils for every cell."""
+    soils = records.one_per_specimen(gate.located(gate.judged))
+    strata = gate.located(gate.taken.used("strata")) if "strata" in gate.taken else soils.iloc[:0]
+    has_answer = soils[gate.job.systems[0].COLUMN].notna() | (soils["suitability"] != "not assessed")
+    grid = Grid(sheet.centers, sheet.depths, sheet.levels.width / 2)
+    return estimate(soils, strata, has_answer.to_numpy(bool), grid, ranges)
+
+
+def tally(answer: Estimate, gate: Gate) -> steps.Judged:
+    """Count symbols, verdicts and rules of the records in every cell."""
+    kinds, ensemble = answer.records, answer.ensemble
+    odds = {}
+    for system in gate.job.systems:
+        symbols = (NOT_DETERMINED, *system.SYMBOLS)
+        odds[system.NAME] = (ensemble.tally(membership(kinds[system.COLUMN], symbols)), symbols)
+    probability = ensemble.tally(membership(kinds["suitability"], SCALE.words))
+    by_rule = kinds[["rule", "suitability"]].drop_duplicates().reset_index(drop=True)
+    names = by_rule["rule"] + "\n" + by_rule["suitability"]
+    shares = ensemble.tally(membership(kinds["rule"] + "\n" + kinds["suitability"], tuple(names)))
+    behind = (by_rule["rule"].tolist(), by_rule["suitability"].tolist(), shares)
+    return steps.Judged(odds, probability, behind, answer.evidence, ensemble.weights)
+
+
+def membership(names: pd.Series, classes: tuple[str, ...]) -> NDArray[np.float64]:
+    """Return 1 where a record is of a class, shape (records, classes); a missing name is of the first class."""
+    codes = pd.Categorical(names.fillna(classes[0]), categories=list(classes)).codes
+    return np.eye(len(classes))[codes]
+
+
+def draw(gate: Gate, sheet: cells.Sheet, ranges: Ranges, judged: steps.Judged) -> NDArray[np.int8]:
+    """Draw the verdict of the design zone of each step, jointly along the line."""
+    settings, profile = gate.job.corridor.estimation, gate.job.corridor.profile
+    shape = sheet.is_used.shape
+    spacing, reach = (profile.step_m, profile.thickness_m), (ranges.horizontal, ranges.vertical)
+    fields = probability_field(shape, spacing, reach, settings.realizations, settings.seed)
+    zone = subgrade.natural_zone(sheet)
+    return zone_draws(judged.probability.reshape(*shape, -1), zone.in_zone, fields, SCALE)
+
+
+def imported(gate: Gate) -> steps.Fill:
+    """Judge the imported material that the corridor file names, if it names one."""
+    fill = gate.job.corridor.fill
+    if fill is None:
+        return steps.Fill("", SCALE.column("not assessed"), subgrade.IMPORTED_FILL)
+    verdict = rules.rate(pd.DataFrame({"uscs_symbol": pd.array([fill.group], "string")}), gate.job.rule_sets).iloc[0]
+    return steps.Fill(fill.group, int(verdict["verdict"]), f"imported fill, by the corridor file: {verdict['rule']}")

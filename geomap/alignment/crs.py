@@ -20,6 +20,7 @@ Floats = NDArray[np.float64]
 
 PSEUDO_MERCATOR = "Popular Visualisation Pseudo Mercator"  # method name, EPSG dataset, method 1024
 LENGTH_ERROR_PPM = 1000.0  # 1 m in 1 km; common practice, no source
+AREA_MARGIN_DEG = 0.01  # an area without width is none to some releases of PROJ
 _RIGHT_HANDED = {("east", "north"), ("north", "east"), ("west", "south")}  # the second is read as the first
 
 
@@ -133,7 +134,7 @@ def to_crs(x: ArrayLike, y: ArrayLike, from_crs: CRS, to: CRS) -> Transformed:
             f"no transformation is known from {from_crs.name} to {to.name}",
         )  # fmt: skip
     best = group.transformers[0]
-    new_x, new_y = best.transform(np.where(known, east, np.nan), np.where(known, north, np.nan))
+    new_x, new_y = _moved(best, np.where(known, east, np.nan), np.where(known, north, np.nan))
     found = np.isfinite(new_x) & np.isfinite(new_y)
     notes = []
     accuracy = float(best.accuracy) if best.accuracy >= 0 else np.nan
@@ -164,7 +165,7 @@ def scale_note(x: ArrayLike, y: ArrayLike, crs: CRS, grid_to_ground: float = 1.0
         Ground distance over grid distance that the corridor states.
     """
     geographic = Transformer.from_crs(crs, crs.geodetic_crs, always_xy=True)
-    longitude, latitude = geographic.transform(np.asarray(x, dtype=float), np.asarray(y, dtype=float))
+    longitude, latitude = _moved(geographic, np.asarray(x, dtype=float), np.asarray(y, dtype=float))
     scale = np.asarray(Proj(crs).get_factors(longitude, latitude).meridional_scale) * grid_to_ground
     error = (scale - 1.0) * 1e6
     worst = float(error[np.argmax(np.abs(error))])
@@ -179,14 +180,23 @@ def _transformations(x: Floats, y: Floats, from_crs: CRS, to: CRS) -> Transforme
     """Return the transformations for the area of the points, the best first."""
     longitude, latitude = x, y
     if not from_crs.is_geographic and from_crs.geodetic_crs is not None:
-        longitude, latitude = Transformer.from_crs(from_crs, from_crs.geodetic_crs, always_xy=True).transform(x, y)
+        longitude, latitude = _moved(Transformer.from_crs(from_crs, from_crs.geodetic_crs, always_xy=True), x, y)
     inside = np.isfinite(longitude) & np.isfinite(latitude) & (np.abs(longitude) <= 180) & (np.abs(latitude) <= 90)
     area = None
     if inside.any():
         area = AreaOfInterest(
-            *(float(value) for value in (longitude[inside].min(), latitude[inside].min())),
-            *(float(value) for value in (longitude[inside].max(), latitude[inside].max())),
+            max(-180.0, float(longitude[inside].min()) - AREA_MARGIN_DEG),
+            max(-90.0, float(latitude[inside].min()) - AREA_MARGIN_DEG),
+            min(180.0, float(longitude[inside].max()) + AREA_MARGIN_DEG),
+            min(90.0, float(latitude[inside].max()) + AREA_MARGIN_DEG),
         )
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")  # a missing grid is said in the note
         return TransformerGroup(from_crs, to, always_xy=True, area_of_interest=area)
+
+
+def _moved(transformer: Transformer, x: Floats, y: Floats) -> tuple[Floats, Floats]:
+    """Return transformed arrays of the same shape."""
+    # Never one point alone: pyproj before 3.7 takes an array of one for a scalar.
+    new_x, new_y = transformer.transform(np.append(x, np.nan), np.append(y, np.nan))
+    return np.asarray(new_x)[:-1].reshape(x.shape), np.asarray(new_y)[:-1].reshape(x.shape)

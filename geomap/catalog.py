@@ -20,7 +20,11 @@ def choices() -> dict[str, list[str]]:
 def known() -> dict[str, list[dict[str, str]]]:
     """Return everything known here by family: name, title, and where they have one, source, edition and flag."""
     rule_sets = [rules.read_rule_set(name, purpose=None) for name in rules.rule_set_names()]
-    formats = {"tables": borings.FORMATS, "alignments": alignments.FORMATS, "levels": surfaces.FORMATS}
+    formats = [
+        *((f.NAME, "tables", f.TITLE, f.SUFFIXES) for f in borings.FORMATS),
+        *((f.NAME, "alignment", f.TITLE, f.SUFFIXES) for f in alignments.FORMATS),
+        *((f.NAME, "levels", f.TITLE, f.SUFFIXES) for f in surfaces.FORMATS),
+    ]
     return {
         "standards": [{"name": s.NAME, "title": s.TITLE, "source": s.SOURCE, "edition": s.EDITION} for s in SYSTEMS],
         "rule_sets": [
@@ -28,9 +32,8 @@ def known() -> dict[str, list[dict[str, str]]]:
             for r in rule_sets
         ],
         "file_formats": [
-            {"name": f"{f.NAME} ({role})", "title": f"{f.TITLE}: {', '.join(f.SUFFIXES)}"}
-            for role, family in formats.items()
-            for f in family
+            {"name": f"{name} ({role})", "title": f"{title}: {', '.join(suffixes)}"}
+            for name, role, title, suffixes in formats
         ],
         "outputs": [{"name": export.NAME, "title": export.TITLE} for export in EXPORTS],
     }

@@ -116,12 +116,11 @@ def run(corridor: str, quiet: bool, as_json: bool) -> int:
     with _progress(quiet) as tell:
         results, files = pipeline.run_and_write(corridor, tell)
     if as_json:
-        click.echo(json.dumps({"ok": True, **pipeline.summary(results), "files": [str(f) for f in files]}))
+        click.echo(json.dumps({"ok": True, **results.summary(), "files": [str(f) for f in files]}))
     elif not quiet:
         _show_counts(results.tables["counts"])
         _show_findings(results.tables["findings"], SHOWN_FINDINGS, f"geomap check {corridor}")
-        for line in pipeline.answer(results):
-            click.echo(line)
+        _show_answer(results.summary())
         click.echo("wrote")
         for file in files:
             click.echo(f"  {_short(file)}")
@@ -134,12 +133,15 @@ def run(corridor: str, quiet: bool, as_json: bool) -> int:
 @_common
 def check(corridor: str, target: str | None, quiet: bool, as_json: bool) -> int:
     """Read and judge the input only, and print the findings; nothing else is written."""
-    from geomap import pipeline
+    from geomap import gate as gates
+    from geomap.exports import table_files
 
+    if target:
+        table_files.check_ending(Path(target))
     with _progress(quiet) as tell:
-        gate = pipeline.check(corridor, tell)
+        gate = gates.check(corridor, tell)
         if target:
-            pipeline.save_table(gate.findings, Path(target))
+            table_files.save(gate.findings, Path(target))
     blocks = int((gate.findings["action"] == "block").sum())
     if as_json:
         found = json.loads(gate.findings.to_json(orient="records"))
@@ -163,10 +165,10 @@ def check(corridor: str, target: str | None, quiet: bool, as_json: bool) -> int:
 @_common
 def classify(table: str, target: str, systems: tuple[str, ...], sheet: str, quiet: bool, as_json: bool) -> int:
     """Classify a table of laboratory results: the same rows in the same order, with the classes added."""
-    from geomap import pipeline
+    from geomap import lab_table
 
     with _progress(quiet) as tell:
-        done = pipeline.classify_file(Path(table), Path(target), systems, sheet, tell)
+        done = lab_table.classify_file(Path(table), Path(target), systems, sheet, tell)
     if as_json:
         found = json.loads(done.findings.to_json(orient="records"))
         click.echo(json.dumps({"ok": True, "rows": done.rows, "classified": done.classified, "findings": found}))
@@ -218,6 +220,20 @@ def _show_counts(counts: Any) -> None:
     click.echo(f"{'table':<12}{'read':>8}{'used':>8}{'left out':>10}")
     for row in counts.itertuples():
         click.echo(f"{row.table:<12}{row.read:>8}{row.used:>8}{row.left_out:>10}")
+
+
+def _show_answer(summary: Any) -> None:
+    total = summary["length_m"]
+    click.echo(f"{summary['name']}, {total:,.0f} m")
+    for title, words in (
+        ("design zone", ("suitable", "treat", "unsuitable", "not assessed")),
+        ("evidence", ("observed", "inferred", "no data")),
+    ):
+        shares = ((word, summary[f"length_{word.replace(' ', '_')}_m"]) for word in words)
+        click.echo(f"  {title:<12}" + ", ".join(f"{word} {length:,.0f} m" for word, length in shares if length))
+    click.echo(f"  {'estimation':<12}{summary['estimation']}")
+    for caution in summary["cautions"]:
+        click.echo(click.style(f"  {caution}", dim=True))
 
 
 def _show_findings(findings: Any, most: int, more_by: str) -> None:

@@ -92,7 +92,7 @@ def check(path: str | Path, tell: Tell = silent) -> Gate:
         {name: part.used("levels") for name, part in given.items()},
         taken.used("borings").join(placed["distance_m"]),
         chainage,
-        design and Drawing(design.reference, design.construction_thickness_m, design.pipe_diameter_m),
+        Drawing(design.reference, design.construction_thickness_m, design.pipe_diameter_m) if design else None,
         corridor.subgrade.width_m,
     )
     tell("classifying")

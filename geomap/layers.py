@@ -110,15 +110,14 @@ def results(gate: Gate, found: Found, verdicts: Sequence[str]) -> Results:
 
 def sentences(findings: pd.DataFrame) -> list[str]:
     """Return each finding as one sentence in the house pattern."""
-    rows = findings.astype(object).where(findings.notna(), "")
+    texts = findings.astype("string").fillna("")
     return [
         problem(
-            ", ".join(str(p) for p in (r.file, r.sheet, r.row_number and f"row {r.row_number}", r.heading) if p),
-            r.found,
-            r.allowed,
-            r.advice,
+            ", ".join(part for part in (file, sheet, row and f"row {row}", heading) if part), found, allowed, advice
         )
-        for r in rows.itertuples()
+        for file, sheet, row, heading, found, allowed, advice in texts[
+            ["file", "sheet", "row_number", "heading", "found", "allowed", "advice"]
+        ].itertuples(index=False)
     ]
 
 

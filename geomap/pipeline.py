@@ -117,7 +117,8 @@ def tally(answer: Estimate, gate: Gate) -> steps.Judged:
 def membership(names: pd.Series, classes: tuple[str, ...]) -> NDArray[np.float64]:
     """Return 1 where a record is of a class, shape (records, classes); a missing name is of the first class."""
     codes = pd.Categorical(names.fillna(classes[0]), categories=list(classes)).codes
-    return np.eye(len(classes))[codes]
+    rows: NDArray[np.float64] = np.eye(len(classes))[codes]
+    return rows
 
 
 def draw(gate: Gate, sheet: cells.Sheet, ranges: Ranges, judged: steps.Judged) -> NDArray[np.int8]:

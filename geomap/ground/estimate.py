@@ -8,6 +8,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 from scipy.spatial import KDTree
+from threadpoolctl import threadpool_limits
 
 from geomap.errors import InputError
 from geomap.ground import neighbors, records
@@ -108,7 +109,9 @@ def estimate(
     soils, names = soils.loc[votes], names[votes]
     points = _points(soils, names, domain_codes, boring_codes)
     rows = np.tile(np.arange(len(grid.depth)), len(grid.distance))
-    ensemble = neighbors.ensemble(grid.cells(), rows, points, layer_points, ranges)
+    # Many middle-sized solves: on two or more threads the linear algebra waits for itself, up to seven times as long.
+    with threadpool_limits(limits=1, user_api="blas"):
+        ensemble = neighbors.ensemble(grid.cells(), rows, points, layer_points, ranges)
     return Estimate(ensemble, soils, _evidence(ensemble, soils, layers, grid))
 
 

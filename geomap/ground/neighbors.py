@@ -29,7 +29,8 @@ Ints = NDArray[np.int64]
 HORIZONTAL_RANGE_M = 200.0  # common practice, no source
 VERTICAL_RANGE_M = 2.0  # common practice, no source
 NUGGET = 0.1  # share of the variance between samples side by side; common practice, no source
-BACKGROUND_DEPTH_M = 1.0  # standard deviation of the depth window of the background; our choice
+BACKGROUND_DEPTH_M = 1.0  # half width of the depth window of samples in the background; our choice
+LAYER_DEPTH_M = 0.1  # the same for logged layers, which are known at every depth; our choice
 LEAST_WEIGHT = 0.001  # smaller weights are given to the background
 GLOBAL_POINTS = 1500  # up to this many points of a domain, all take part
 LOCAL_POINTS = 64  # beyond it, the nearest ones in scaled coordinates
@@ -169,7 +170,8 @@ def ensemble(cells: Points, depth_row: Ints, records: Points, layers: Points, ra
     rows = int(depth_row.max(initial=0)) + 1
     row_depth = np.bincount(depth_row, cells.depth, rows) / np.maximum(np.bincount(depth_row, minlength=rows), 1)
     voting = np.bincount(records.domain, minlength=count) > 0
-    prior = _domain_prior(layers if len(layers) else records, row_depth, count)
+    logged = (layers, LAYER_DEPTH_M) if len(layers) else (records, BACKGROUND_DEPTH_M)
+    prior = _domain_prior(*logged, row_depth, count)
     weights, shares = [], []
     for block in _blocks(len(cells)):
         here = cells.take(block)
@@ -227,25 +229,29 @@ def _one_hot(codes: Ints, count: int) -> Floats:
     return result
 
 
-def _depth_window(row_depth: Floats, points: Points) -> Floats:
-    """Return how much each point speaks for each depth, shape (depths, points); borings count alike."""
-    gap = (row_depth[:, None] - points.depth) / BACKGROUND_DEPTH_M
-    window: Floats = np.exp(-0.5 * np.minimum(gap**2, 200.0))
+def _depth_window(row_depth: Floats, points: Points, width_m: float) -> Floats:
+    """Return how much each point speaks for each depth, shape (depths, points); borings count alike.
+
+    The window falls to a quarter at `width_m`, and then with the fourth power of the gap: below the deepest hole the
+    nearest depths still count most.
+    """
+    gap = (row_depth[:, None] - points.depth) / width_m
+    window: Floats = (1.0 + gap**2) ** -2
     per_boring = window @ _one_hot(points.boring, int(points.boring.max(initial=0)) + 1)
     # A boring with many samples at a depth must not outvote one with few; far above or below, it fades as they do.
     crowd = np.maximum(per_boring[:, points.boring], 1.0)
     return window / crowd
 
 
-def _domain_prior(points: Points, row_depth: Floats, count: int) -> Floats:
+def _domain_prior(points: Points, width_m: float, row_depth: Floats, count: int) -> Floats:
     """Return how common each domain is at each depth, shape (depths, domains); rows add to 1."""
-    common = _depth_window(row_depth, points) @ _one_hot(points.domain, count)
+    common = _depth_window(row_depth, points, width_m) @ _one_hot(points.domain, count)
     prior: Floats = common / common.sum(axis=1, keepdims=True)
     return prior
 
 
 def _background(records: Points, row_depth: Floats, count: int) -> Floats:
     """Return the share of each record in the background of its domain at each depth, shape (depths, records)."""
-    window = _depth_window(row_depth, records)
+    window = _depth_window(row_depth, records, BACKGROUND_DEPTH_M)
     in_domain = window @ _one_hot(records.domain, count)
     return window / np.maximum(in_domain[:, records.domain], np.finfo(float).tiny)

@@ -82,7 +82,7 @@ def step_table(
     table["samples_used"] = np.asarray(counted.sum(axis=1)).ravel()
     names, verdict_of_rule, shares = judged.rules
     behind = np.nan_to_num(zone.mean(shares))
-    table["rule"] = governing_rule(names, verdict_of_rule, behind, table["suitability"].to_numpy(object))
+    table["rule"] = governing_rule(names, verdict_of_rule, behind, table["suitability"].to_numpy(object), scale)
     return _with_fill(table, fill)
 
 

@@ -106,11 +106,12 @@ def shares(draws: NDArray[np.int8], verdicts: int) -> Floats:
 
 
 def governing_rule(
-    rules: Sequence[str], rule_verdict: Sequence[str], membership: Floats, verdict: NDArray[np.object_]
+    rules: Sequence[str], rule_verdict: Sequence[str], membership: Floats, verdict: NDArray[np.object_], scale: Scale
 ) -> NDArray[np.object_]:
-    """Return for each step the rule behind its verdict: of the rules that give that verdict, the greatest share.
+    """Return for each step the rule behind its verdict.
 
-    Where none gives it (a step may come out as "treat" because it is partly unsuitable), the greatest of all.
+    Of the rules that give this verdict or a worse one, it is the one with the greatest share of the soil: a step may
+    come out as "treat" because too much of it may be unsuitable, and then the rule that says so is named.
 
     Parameters
     ----------
@@ -120,7 +121,12 @@ def governing_rule(
         Share of the soil that each rule decided, shape (steps, rules).
     verdict
         Verdict of each step.
+    scale
+        The verdicts.
     """
-    gives_it = (np.array(rule_verdict, dtype=object) == verdict[:, None]) & (membership > 0)
-    chosen: NDArray[np.object_] = np.array(rules, dtype=object)[(membership + gives_it).argmax(axis=1)]
+    rank = dict(zip(scale.words, scale.rank.tolist(), strict=True))
+    of_rule = np.array([rank[word] for word in rule_verdict])
+    of_step = np.array([rank[word] for word in verdict])
+    bad_enough = (of_rule <= of_step[:, None]) & (membership > 0)
+    chosen: NDArray[np.object_] = np.array(rules, dtype=object)[(membership + bad_enough).argmax(axis=1)]
     return chosen

@@ -21,7 +21,8 @@ EVERYTHING = STAGES | LEAVES | {"geostat", "ground", "profile", "exports", "resu
 ARROWS = {
     "__init__": set(),
     "__main__": {"cli"},
-    "cli": {"pipeline", "catalog", "starter", "errors"},
+    "cli": {"pipeline", "gate", "lab_table", "catalog", "starter", "exports", "errors"},
+    "lab_table": {"readers", "intake", "soils", "exports", "registry", "errors"},
     "pipeline": EVERYTHING | {"inputs", "gate"},
     "gate": EVERYTHING - {"exports", "results", "layers", "geostat"} | {"inputs"},
     "inputs": {"catalog", "corridor", "registry", "readers", "alignment", "soils", "ratings", *LEAVES},

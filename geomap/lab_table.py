@@ -1,0 +1,76 @@
+"""A table of laboratory results classified on its own: the same rows in the same order, with the classes added."""
+
+from __future__ import annotations
+
+import dataclasses
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+import pandas as pd
+
+from geomap import intake, registry
+from geomap.errors import InputError, problem
+from geomap.exports import table_files
+from geomap.readers import borings
+from geomap.readers.options import TableOptions
+from geomap.soils.classification import ASTM_AND_AASHTO, classify_samples
+from geomap.soils.systems import SYSTEMS
+
+
+@dataclass(frozen=True)
+class Done:
+    """What was done: rows written, rows with a class by system, and the findings."""
+
+    rows: int
+    classified: dict[str, int]
+    findings: pd.DataFrame
+
+
+def classify_file(table: Path, target: Path, systems: Sequence[str], sheet: str, tell: Callable[[str], None]) -> Done:
+    """Classify the table in a file and write it, with the classes, to another.
+
+    Each row is a specimen of its own. The columns of the user are written back as found; where one of them is
+    called like a column of geomap, ours gets ``_geomap`` at its end.
+
+    Parameters
+    ----------
+    table, target
+        Files; the ending of `target` decides its format.
+    systems
+        Names of classification systems; empty for ASTM D2487 and AASHTO M 145.
+    sheet
+        Sheet or layer, where there are several.
+    tell
+        Called with the stage at work.
+
+    Raises
+    ------
+    UsageError
+        An ending or a system is not known.
+    InputError
+        The table cannot be used.
+    OutputInUseError
+        The target cannot be written.
+    """
+    table_files.check_ending(target)
+    chosen = [registry.named(SYSTEMS, name, "--system") for name in systems or ASTM_AND_AASHTO]
+    form = registry.for_file(borings.FORMATS, table, str(table))
+    if table.resolve() == target.resolve():
+        raise InputError(problem(str(target), "the table itself", "another file", "geomap does not rewrite your files"))
+    tell("reading")
+    raw = form.read(table, "lab_results", TableOptions(sheet=sheet))
+    tell("checking")
+    taken = intake.screen(intake.accept([dataclasses.replace(raw, layout="samples")]), intake.SOIL_CHECKS)
+    samples = taken.rows("samples")
+    tell("classifying")
+    names = [system.NAME for system in chosen]
+    classes = classify_samples(samples, names, gradations=taken.used("gradations"))
+    classes = classes.set_axis(raw.original.index)
+    classes.columns = [f"{n}_geomap" if n in raw.original.columns else n for n in classes.columns]
+    tell("writing")
+    table_files.save(pd.concat([raw.original, classes], axis=1), target)
+    counts = {
+        system.NAME: int(classes.filter(regex=f"^{system.COLUMN}(_geomap)?$").notna().sum().sum()) for system in chosen
+    }
+    return Done(len(raw.original), counts, taken.findings)

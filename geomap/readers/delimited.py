@@ -17,13 +17,14 @@ import pandas as pd
 
 from geomap.errors import InputError, UsageError, problem
 from geomap.readers.files import first_bytes, signature
-from geomap.readers.sheets import HEADING_SEARCH_ROWS, MAX_COLUMNS, Place, Sheet, check_width
+from geomap.readers.sheets import HEADING_SEARCH_ROWS, Place, Sheet, check_width
 from geomap.tables.findings import Check
 
 SUFFIXES = (".csv", ".txt", ".tsv")
 DELIMITERS = {"comma": ",", "semicolon": ";", "tab": "\t", "pipe": "|", "space": " "}
 TRIED = (",", ";", "\t", "|")
 TRIAL_BYTES = 1 << 16  # ours: what the delimiter is found from
+TRIAL_COLUMNS = 1000
 
 # Byte order marks, Unicode standard, section 23.8; the longer ones first.
 _MARKS = (
@@ -130,9 +131,7 @@ def _found_delimiter(data: bytes, encoding: str, score: Score) -> str:
 
     def quality(delimiter: str) -> tuple[int, ...]:
         reader = csv.reader(io.StringIO(head, newline=""), delimiter=delimiter)
-        rows = list(itertools.islice(reader, HEADING_SEARCH_ROWS))
-        if max((len(row) for row in rows), default=0) > MAX_COLUMNS:
-            return (0,)
+        rows = [row[:TRIAL_COLUMNS] for row in itertools.islice(reader, HEADING_SEARCH_ROWS)]
         widths = Counter(len(row) for row in rows if len(row) > 1)
         return (*score(rows), widths.most_common(1)[0][1] if widths else 0)
 

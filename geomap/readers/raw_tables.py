@@ -64,12 +64,14 @@ def from_sheet(sheet: Sheet, layout: Layout, options: TableOptions) -> RawTable:
     start = top + 1 + bool(units)
     widths = [filled(row) for row in sheet.rows[start:]]
     used = [index for index, width in enumerate(widths, start) if width]
-    row = _heading_row(sheet, top, start, widths)
+    row = list(sheet.rows[top])
+    if not sheet.delimiter:  # in a workbook notes may stand beside the table
+        row += [""] * (max(widths, default=0) - len(row))
     headings = resolve(row, layout, options, sheet.place(top), units)
+    _check_lengths(sheet, len(row), start, widths)
     notes = [sheet.findings, headings.findings, *_about_rows(sheet, top, units)]
-    original = pd.DataFrame([sheet.rows[index] for index in used], dtype=object)
-    original = original.reindex(columns=range(len(row))).astype("string").fillna("")
-    original.columns = pd.Index(headings.labels, dtype=object)
+    filled_rows = [_of_length(sheet.rows[index], len(row)) for index in used]
+    original = pd.DataFrame(filled_rows, columns=pd.Index(headings.labels, dtype=object), dtype=object).astype("string")
     original.index = pd.Index(np.array(used, dtype=np.int64) + 1, name=ROW_INDEX)
     nameless = {label for label, cell in zip(headings.labels, row, strict=True) if not cell.strip()}
     empty = {label for label in nameless if not original[label].str.strip().astype(bool).any()}
@@ -79,20 +81,18 @@ def from_sheet(sheet: Sheet, layout: Layout, options: TableOptions) -> RawTable:
     return with_conventions(table, sheet.delimiter)
 
 
-def _heading_row(sheet: Sheet, top: int, start: int, widths: Sequence[int]) -> list[str]:
-    """Return the heading row, as wide as the rows beneath it.
-
-    In a text file a longer row has a delimiter too many, and its cells stand under wrong headings.
-    """
-    row = list(sheet.rows[top])
-    longest = max(widths, default=0)
-    if longest > len(row) and sheet.delimiter:
-        places = [str(index + 1) for index, width in enumerate(widths, start) if width > len(row)]
+def _check_lengths(sheet: Sheet, most: int, start: int, widths: Sequence[int]) -> None:
+    """Raise where a row is longer than the heading row: a delimiter too many puts cells under wrong headings."""
+    places = [str(index + 1) for index, width in enumerate(widths, start) if width > most]
+    if places:
         more = f" and {len(places) - SHOWN_ROWS} more" if len(places) > SHOWN_ROWS else ""
-        found = f"up to {longest} cells in row {', '.join(places[:SHOWN_ROWS])}{more}"
+        found = f"up to {max(widths)} cells in row {', '.join(places[:SHOWN_ROWS])}{more}"
         remedy = "put cells that hold the delimiter in double quotes"
-        raise InputError(problem(str(sheet.place()), found, f"at most {len(row)}, as there are headings", remedy))
-    return row + [""] * (longest - len(row))
+        raise InputError(problem(str(sheet.place()), found, f"at most {most}, as there are headings", remedy))
+
+
+def _of_length(row: Sequence[str], length: int) -> Sequence[str]:
+    return row if len(row) == length else [*row[:length], *[""] * (length - len(row))]
 
 
 def _about_rows(sheet: Sheet, top: int, units: Sequence[str]) -> list[pd.DataFrame]:

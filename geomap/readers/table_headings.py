@@ -25,18 +25,18 @@ from geomap.units import LENGTH_UNITS
 _SIEVE_NUMBER = re.compile(r"p(?:4|10|40)(?:%|pct)?")
 
 UNIT_NOT_KNOWN = Check(
-    "heading_unit",
+    "unit of the heading not known",
     "hold_out",
     "a unit that the column can have",
     "column not read; correct its unit",
 )
 LENGTH_UNIT = Check(
-    "length_unit", "convert", "a unit in the heading", "taken in the corridor's length_unit; add the unit to be sure"
+    "length unit", "convert", "a unit in the heading", "taken in the corridor's length_unit; add the unit to be sure"
 )
-UNITS_ROW = Check("units_row", "accept", "units in the headings", "row beneath the headings read as their units")
-REPEATED = Check("repeated_heading", "accept", "each heading once", "not used; a number was added to its name")
+UNITS_ROW = Check("units row", "accept", "units in the headings", "row beneath the headings read as their units")
+REPEATED = Check("heading twice", "accept", "each heading once", "not used; a number was added to its name")
 SIEVE_NUMBER = Check(
-    "sieve_number", "accept", "a size with its unit", "read as a US sieve number; write the size in mm if it is one"
+    "sieve number", "accept", "a size with its unit", "read as a US sieve number; write the size in mm if it is one"
 )
 
 

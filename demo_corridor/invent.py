@@ -75,7 +75,7 @@ def group_words(group: str, sand: int, gravel: int) -> str:
     if group == "PT":
         return "Peat"
     if group in ("ML", "CL", "CH", "MH", "OL", "OH"):
-        noun = {"ML": "silt", "CL": "lean clay", "CH": "fat clay", "MH": "elastic silt"}.get(group, "organic soil")
+        noun = {"ML": "silt", "CL": "lean clay", "CH": "fat clay", "MH": "elastic silt"}.get(group, "organic clay")
         most, coarse = ("sand", "sandy") if sand >= gravel else ("gravel", "gravelly")
         if sand + gravel >= 30:
             return f"{coarse} {noun}".capitalize()
@@ -193,7 +193,8 @@ def laboratory(piece: Soil, is_bulk: bool, chance: Chance) -> dict[str, object]:
 def curve_rows(piece: Soil, chance: Chance) -> list[tuple[float, float]]:
     """Return the sizes and percentages on the sheet: from the finest sieve that all passes, or No. 4, down."""
     first = min(NO_4, max((k for k, p in enumerate(piece.passing) if p >= 100.0), default=0))
-    has_hydrometer = piece.fines > 35 and chance.random() < 0.6
+    needs_d10 = 10 <= piece.fines <= 12.5  # without D10 a dual symbol cannot be settled
+    has_hydrometer = (piece.fines > 35 or needs_d10) and chance.random() < 0.7
     last = len(piece.sizes) if has_hydrometer else len(SIEVES_MM)
     return list(zip(piece.sizes[first:last], piece.passing[first:last], strict=True))
 

@@ -209,10 +209,10 @@ def list_known(quiet: bool, as_json: bool) -> int:
         for family, entries in known.items():
             click.echo(click.style(family.replace("_", " "), bold=True))
             for entry in entries:
-                click.echo(f"  {entry['name']:<22} {entry['title']}")
+                click.echo(f"  {entry['name']:<26} {entry['title']}")
                 for detail in (entry.get("source", ""), entry.get("edition", ""), entry.get("flag", "")):
                     if detail:
-                        click.echo(f"  {'':<22}   {detail}")
+                        click.echo(f"  {'':<26}   {detail}")
     return 0
 
 

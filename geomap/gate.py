@@ -97,24 +97,32 @@ def check(path: str | Path, tell: Tell = silent) -> Gate:
     )
     tell("classifying")
     judged = judge(taken, job)
-    taken = intake.agree(taken, judged, judged)
+    if "uscs_symbol" in judged:
+        taken = intake.agree(taken, judged, judged)
     found = together([of_line, taken.findings, of_crs, *(part.findings for part in given.values()), levels.findings])
     counts = pd.concat([taken.counts(), *(part.counts().assign(table=name) for name, part in given.items())])
     return Gate(job, line, chainage, taken, placed, judged, edges, levels, found, counts.reset_index(drop=True))
 
 
+def logged(taken: intake.Intake) -> pd.DataFrame:
+    """Return the logged layers that are used; an empty table where the corridor has none."""
+    if "strata" in taken:
+        return taken.used("strata")
+    return schema.conform(pd.DataFrame(), schema.inputs()["strata"], schema.SOURCE_COLUMNS)
+
+
 def judge(taken: intake.Intake, job: Job) -> pd.DataFrame:
     """Classify and rate every soil: the samples used, then the logged layers without one. This is the only judge."""
     part = job.corridor.samples
-    strata = taken.used("strata") if "strata" in taken else pd.DataFrame()
+    strata = logged(taken)
     samples = records.with_log(taken.used("samples"), strata)
-    bare = records.bare_layers(samples, strata) if len(strata) else samples.iloc[:0]
+    bare = records.bare_layers(samples, strata)
     gradations = taken.used("gradations")
     described = describe(samples, gradations, part.join_tolerance_m, organic_limit_pct=part.peat_organic_pct)
     alone = describe(bare, gradations.iloc[:0], None)
     alone["specimen"] += len(described)
     soils, properties = pd.concat([samples, bare]), pd.concat([described, alone])
-    classes = [system.classify(properties) for system in job.systems]
+    classes = [system.classify(properties) for system in job.judging]
     own = ["boring", "sample", "top_depth_m", "base_depth_m", "origin", "unit", "lab_sheet", *schema.SOURCE_COLUMNS]
     known = pd.concat([soils[own], properties, *classes], axis=1)
     categories = known.select_dtypes("category").columns

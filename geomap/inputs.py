@@ -26,11 +26,20 @@ LEVELS = ("ground", "formation")  # sections whose tables are levels along the l
 
 @dataclass(frozen=True)
 class Job:
-    """A corridor file, with everything that it names found."""
+    """A corridor file, with everything that it names found.
+
+    Attributes
+    ----------
+    systems
+        Those that the corridor asks for, the leading one first.
+    judging
+        The same, and those whose classes the rule sets look at.
+    """
 
     corridor: Corridor
     crs: CRS
     systems: tuple[System, ...]
+    judging: tuple[System, ...]
     rule_sets: tuple[RuleSet, ...]
 
     def place(self, section: str, key: str) -> str:
@@ -48,12 +57,12 @@ def prepare(path: str | Path) -> Job:
     """
     corridor = read_corridor(path, catalog.choices())
     place = corridor.path.name
-    job = Job(
-        corridor,
-        crs.projected_crs(corridor.corridor.crs, f"{place}: [corridor] crs"),
-        tuple(registry.named(SYSTEMS, name, place) for name in corridor.profile.systems),
-        tuple(read_rule_set(name, corridor.folder) for name in corridor.subgrade.rules),
-    )
+    systems = tuple(registry.named(SYSTEMS, name, place) for name in corridor.profile.systems)
+    rule_sets = tuple(read_rule_set(name, corridor.folder) for name in corridor.subgrade.rules)
+    asked = {column for rule_set in rule_sets for column in rule_set.columns}
+    further = tuple(system for system in SYSTEMS if system.COLUMN in asked and system not in systems)
+    grid = crs.projected_crs(corridor.corridor.crs, f"{place}: [corridor] crs")
+    job = Job(corridor, grid, systems, systems + further, rule_sets)
     for section, part in corridor.tables().items():
         for name in part.files:
             registry.for_file(_family(section), Path(name), job.place(section, "file"))

@@ -18,7 +18,7 @@ from numpy.typing import NDArray
 from geomap import inputs
 from geomap.corridor import Corridor
 from geomap.errors import problem
-from geomap.gate import Gate
+from geomap.gate import Gate, logged
 from geomap.ground.neighbors import Ranges
 from geomap.profile.cells import Sheet
 from geomap.results import CAUTIONS, Results
@@ -79,7 +79,6 @@ def results(gate: Gate, found: Found, verdicts: Sequence[str]) -> Results:
             "ground_basis": gate.levels.ground_basis,
         }
     )
-    strata = gate.located(taken.used("strata")) if "strata" in taken else pd.DataFrame()
     tables = {
         "alignment": alignment(about.name, gate, ground),
         "borings": holes,
@@ -89,7 +88,7 @@ def results(gate: Gate, found: Found, verdicts: Sequence[str]) -> Results:
         "trace": layer("trace", found.trace),
         "findings": gate.findings,
         "ground": ground,
-        "strata": strata.reset_index(drop=True),
+        "strata": gate.located(logged(taken)).reset_index(drop=True),
         "counts": gate.counts,
     }
     tables["run"] = run_record(gate, found, tables["subgrade"])

@@ -12,7 +12,7 @@ from geomap import inputs, layers, registry
 from geomap.errors import InputError
 from geomap.exports import EXPORTS
 from geomap.exports.publish import publish, staging
-from geomap.gate import Gate, Tell, check, silent
+from geomap.gate import Gate, Tell, check, logged, silent
 from geomap.geostat.simulation import probability_field
 from geomap.ground import records
 from geomap.ground.estimate import Estimate, Grid, estimate
@@ -93,7 +93,7 @@ def lay_out(gate: Gate) -> cells.Sheet:
 def weigh(gate: Gate, sheet: cells.Sheet, ranges: Ranges) -> Estimate:
     """Weigh the soils for every cell."""
     soils = records.one_per_specimen(gate.located(gate.judged))
-    strata = gate.located(gate.taken.used("strata")) if "strata" in gate.taken else soils.iloc[:0]
+    strata = gate.located(logged(gate.taken))
     has_answer = soils[gate.job.systems[0].COLUMN].notna() | (soils["suitability"] != "not assessed")
     grid = Grid(sheet.centers, sheet.depths, sheet.levels.width / 2)
     return estimate(soils, strata, has_answer.to_numpy(bool), grid, ranges)

@@ -57,7 +57,8 @@ def place_borings(
     UsageError
         A system is not known.
     """
-    named = borings["crs"].fillna(borings["file"].map(dict(file_crs))).fillna("").astype(object)
+    by_file = [file_crs.get(file, "") for file in borings["file"]]
+    named = borings["crs"].astype(object).where(borings["crs"].notna(), by_file)
     x, y, other_x, other_y = (np.full(len(borings), np.nan) for _ in range(4))
     geographic = np.zeros(len(borings), dtype=bool)
     notes = []

@@ -32,8 +32,7 @@ NUGGET = 0.1  # share of the variance between samples side by side; common pract
 BACKGROUND_DEPTH_M = 1.0  # half width of the depth window of samples in the background; our choice
 LAYER_DEPTH_M = 0.1  # the same for logged layers, which are known at every depth; our choice
 LEAST_WEIGHT = 0.001  # smaller weights are given to the background
-GLOBAL_POINTS = 1500  # up to this many points of a domain, all take part
-LOCAL_POINTS = 64  # beyond it, the nearest ones in scaled coordinates
+NEAREST = 48  # points that each cell may call on, in scaled coordinates; its block of cells shares them
 BLOCK_CELLS = 4000  # cells weighed at once, for memory
 LEAST_ODDS = 1e-9
 
@@ -201,8 +200,7 @@ def _blocks(cells: int) -> Iterator[slice]:
 
 def _weights(cells: Points, points: Points, ranges: Ranges) -> Floats:
     """Return non-negative simple-kriging weights, shape (cells, points); rows add to 1 at most."""
-    neighbors = None if len(points) <= GLOBAL_POINTS else LOCAL_POINTS
-    return simple_kriging(points.places, cells.places, ranges.model, nonnegative=True, neighbors=neighbors).weights
+    return simple_kriging(points.places, cells.places, ranges.model, nonnegative=True, neighbors=NEAREST).weights
 
 
 def _share(cells: Points, records: Points, odds: Floats, ranges: Ranges) -> tuple[sparse.csr_array, Floats]:

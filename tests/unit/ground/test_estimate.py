@@ -107,19 +107,15 @@ def test_one_sample_speaks_for_the_whole_corridor_but_says_no_data_far_off() -> 
     assert result.evidence.reshape(grid().shape)[-1, 2] == "no data"
 
 
-def test_many_records_use_the_nearest_and_agree_with_all_of_them() -> None:
+def test_the_nearest_records_give_what_all_of_them_give(monkeypatch: pytest.MonkeyPatch) -> None:
     rng = np.random.default_rng(3)
     rows = [(f"B{k}", 25.0 * k, 0.25 + z, 0.75 + z, "", "") for k in range(60) for z in range(4)]
     soils = soils_table(rows)
     group = np.eye(3)[rng.integers(0, 3, len(rows))]
     line = grid(length=1500.0, step=20.0, depth=4.0)
+    nearest = estimate(soils, NO_LAYERS, np.ones(len(rows), bool), line, Ranges()).ensemble.tally(group)
+    monkeypatch.setattr(neighbors, "NEAREST", len(rows))
     everything = estimate(soils, NO_LAYERS, np.ones(len(rows), bool), line, Ranges()).ensemble.tally(group)
-    limit = neighbors.GLOBAL_POINTS
-    try:
-        neighbors.GLOBAL_POINTS = 100
-        nearest = estimate(soils, NO_LAYERS, np.ones(len(rows), bool), line, Ranges()).ensemble.tally(group)
-    finally:
-        neighbors.GLOBAL_POINTS = limit
     assert np.abs(everything - nearest).max() < 0.02
 
 

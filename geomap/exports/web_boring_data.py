@@ -16,6 +16,7 @@ from geomap.results import Results
 TESTS = (
     ("fines", "fines_pct", 0),
     ("liquidLimit", "liquid_limit_pct", 0),
+    ("plasticLimit", "plastic_limit_pct", 0),
     ("plasticityIndex", "plasticity_index_pct", 0),
     ("moisture", "moisture_pct", 1),
     ("organic", "organic_pct", 1),
@@ -32,7 +33,6 @@ def borings(results: Results) -> dict[str, Any]:
     return {
         "name": table["boring"].astype(str).tolist(),
         "distance": numbers(table["distance_m"], 2),
-        "chainage": words(table["chainage"]),
         "offset": numbers(table["offset_m"], 2),
         "side": words(table["side"]),
         "ground": numbers(table["ground_level_m"], 2),

@@ -46,7 +46,9 @@ def words(values: object) -> dict[str, list[Any]]:
 
 def positions(values: object, symbols: Sequence[object]) -> NDArray[np.int64]:
     """Return the position of each value among `symbols`, -1 where it is missing or not one of them."""
-    return pd.Index(symbols).get_indexer(pd.Index(pd.Series(values, dtype="object")))
+    place = {symbol: k for k, symbol in enumerate(symbols)}
+    codes, unique = pd.factorize(pd.Series(values, dtype="object"))
+    return np.array([*(place.get(value, -1) for value in unique), -1], dtype=np.int64)[codes]  # -1 takes the last
 
 
 def characters(codes: NDArray[np.int64]) -> str:

@@ -138,7 +138,8 @@ def statement(results: Results) -> str:
     """Return what the run says about its estimate, or a blank text."""
     run = results.tables["run"]
     said = run.loc[run["key"].astype(str).str.startswith("estimat"), "value"]
-    return " ".join(text.rstrip(".") + "." for text in said.dropna().astype(str) if text)
+    texts = " ".join(text.rstrip(".") + "." for text in said.dropna().astype(str) if text)
+    return f"Between borings: {texts}" if texts else ""
 
 
 def _item(system: str, symbol: str | None, name: str, letters: str = "") -> dict[str, Any]:

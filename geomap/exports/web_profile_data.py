@@ -17,6 +17,7 @@ from geomap.results import Results
 SUITABILITY = ("suitable", "treat", "unsuitable", "not assessed")
 EVIDENCE = ("observed", "inferred", "no data")
 MATERIAL = ("natural", "mixed", "imported")
+LEAST_SHARE = 0.005  # the odds name every symbol from here on
 TRACE_ROWS = 12  # samples named for one step; the page says how many more there are and their weight
 
 
@@ -89,6 +90,8 @@ def cells(results: Results, system: str, symbols: Sequence[str]) -> dict[str, An
 def odds(texts: pd.Series, symbols: Sequence[str]) -> list[str]:
     """Return three characters for each symbol of each text, likeliest first: its place, then its percent.
 
+    A symbol that rounds to no percent at all is dropped.
+
     Examples
     --------
     >>> odds(pd.Series(['{"CL": 0.2, "SM": 0.8}', None]), ["CL", "SM"])
@@ -96,7 +99,8 @@ def odds(texts: pd.Series, symbols: Sequence[str]) -> list[str]:
     """
     codes, unique = pd.factorize(texts)
     place = dict(zip(symbols, ALPHABET, strict=False))
-    pairs = [sorted(json.loads(text).items(), key=lambda pair: -pair[1]) for text in unique]
+    rows = (json.loads(text).items() for text in unique)
+    pairs = [sorted((pair for pair in row if pair[1] > LEAST_SHARE), key=lambda pair: -pair[1]) for row in rows]
     packed = percents([share for row in pairs for _, share in row])  # all at once: there are tens of thousands
     at = 0
     short: list[str] = [""]

@@ -3,6 +3,7 @@
 const TEST_NAMES = {
   fines: "fines",
   liquidLimit: "LL",
+  plasticLimit: "PL",
   plasticityIndex: "PI",
   moisture: "moisture",
   organic: "organic",
@@ -11,6 +12,8 @@ const TEST_NAMES = {
   cbrInPlace: "CBR in place",
   sptN: "SPT N",
 };
+
+const PLAIN_TESTS = new Set(["liquidLimit", "plasticLimit", "plasticityIndex", "sptN"]); // written without a percent sign
 
 function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
   const { borings, samples, strata, legend } = data;
@@ -25,7 +28,7 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
     const offset = borings.offset[number];
     const side = borings.side[number];
     const aside = offset === null || side === "on line" ? "on the line" : `${lengths.text(Math.abs(offset), 1)} ${side || ""}`;
-    return fact("Chainage", `${borings.chainage[number] || chainage.text(borings.distance[number])}, ${aside}`);
+    return fact("Chainage", `${chainage.text(borings.distance[number])}, ${aside}`);
   }
 
   function tests(row) {
@@ -33,7 +36,7 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
       const value = samples.tests[key][row];
       if (value === null) return "";
       const bound = (samples.bounds[key] || [])[row] || "";
-      return `${name} ${bound}${value}${key === "sptN" || key === "liquidLimit" || key === "plasticityIndex" ? "" : "%"}`;
+      return `${name} ${bound}${value}${PLAIN_TESTS.has(key) ? "" : "%"}`;
     });
     if (samples.nonplastic[row] === 1) parts.splice(1, 0, "NP");
     return joined(parts, ", ");
@@ -121,7 +124,8 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
       block(item, 40, 54, strata.top[row], strata.base[row] ?? depth, 60);
     }
     let last = -99;
-    for (const row of data.samplesOf[number]) {
+    const drawn = data.samplesOf[number].filter((row) => samples.top[row] !== null && samples.used[row] !== 0);
+    for (const row of drawn) {
       const base = samples.base[row] ?? samples.top[row];
       const item = samples.group[row] < 0 ? legend.unknown : legend.groups[samples.group[row]];
       block(item, 104, 34, samples.top[row], base, 100);
@@ -131,7 +135,7 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
       context.textAlign = "left";
       context.fillText(joined([item.symbol, shortened(samples.sample[row] || "", 14)], "  "), 144, at);
     }
-    drawTests(context, number, y);
+    drawTests(context, drawn, y);
     context.strokeStyle = "#1c2733";
     context.strokeRect(40, y(0), 54, y(depth) - y(0));
     context.fillStyle = "#4d5a66";
@@ -146,8 +150,8 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
   }
 
   // Fines as a bar, plastic to liquid limit as a line, moisture as a dot, on one scale from 0 to 100 %.
-  function drawTests(context, number, y) {
-    const [left, right] = [206, 300];
+  function drawTests(context, rows, y) {
+    const [left, right] = [224, 300];
     const x = (percent) => left + (Math.min(percent, 100) / 100) * (right - left);
     context.fillStyle = "#4d5a66";
     context.font = `10px ${FONT}`;
@@ -156,16 +160,16 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
       context.fillText(`${percent}${percent ? "" : "%"}`, x(percent), 8);
       context.fillRect(x(percent) - 0.25, 15, 0.5, 197);
     }
-    for (const row of data.samplesOf[number]) {
-      const { fines, liquidLimit, plasticityIndex, moisture } = samples.tests;
+    for (const row of rows) {
+      const { fines, liquidLimit, plasticLimit, plasticityIndex, moisture } = samples.tests;
       const at = y((samples.top[row] + (samples.base[row] ?? samples.top[row])) / 2);
       if (fines[row] !== null) {
         context.fillStyle = "#c2c9ce";
         context.fillRect(left, at - 4, x(fines[row]) - left, 8);
       }
       context.fillStyle = "#1c2733";
-      if (liquidLimit[row] !== null && plasticityIndex[row] !== null) {
-        const plastic = liquidLimit[row] - plasticityIndex[row];
+      const plastic = plasticLimit[row] ?? (plasticityIndex[row] === null ? null : liquidLimit[row] - plasticityIndex[row]);
+      if (liquidLimit[row] !== null && plastic !== null) {
         context.fillRect(x(plastic), at - 1, x(liquidLimit[row]) - x(plastic), 2);
         for (const end of [plastic, liquidLimit[row]]) context.fillRect(x(end) - 0.75, at - 4, 1.5, 8);
       }

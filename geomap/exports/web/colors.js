@@ -65,15 +65,18 @@ function makeColors(data) {
   const rampClass = (percent) => ramp.findIndex((item) => percent < item.below);
   // A share that is mostly "not assessed" says nothing about unsuitable soil; zero would look like good news.
   const unsuitableStep = (step) => (steps.p3[step] >= 50 || steps.p2[step] < 0 ? ramp.length : rampClass(steps.p2[step]));
+  // Soil that is not determined may have its own symbol among the groups; it is one class, not two.
+  const undetermined = legend.groups.findIndex((item) => item.symbol === legend.unknown.symbol);
+  const unknown = undetermined < 0 ? legend.groups.length + 1 : undetermined;
   const modes = {
     group: {
       title: `Soil group (${legend.systemTitle})`,
       classes: [...legend.groups, legend.imported, legend.unknown],
       step: (step) => {
         if (steps.group[step] >= 0) return steps.group[step];
-        return legend.groups.length + (steps.material[step] === 2 ? 0 : 1);
+        return steps.material[step] === 2 ? legend.groups.length : unknown;
       },
-      cell: (cell) => (cells.group[cell] < 0 ? legend.groups.length + 1 : cells.group[cell]),
+      cell: (cell) => (cells.group[cell] < 0 ? unknown : cells.group[cell]),
       strength: (cell) => cells.probability[cell],
       stepStrength: (step) => (steps.group[step] >= 0 ? steps.probability[step] : 100),
     },

@@ -2,6 +2,19 @@
 
 const ALPHABET = "0123456789ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz";
 
+// Calls that arrive within one frame become one.
+function oncePerFrame(act) {
+  let waiting = false;
+  return () => {
+    if (waiting) return;
+    waiting = true;
+    requestAnimationFrame(() => {
+      waiting = false;
+      act();
+    });
+  };
+}
+
 function unpackCodes(text) {
   const codes = new Int8Array(text.length);
   for (let i = 0; i < text.length; i += 1) codes[i] = ALPHABET.indexOf(text[i]); // "-" is not found: -1
@@ -59,6 +72,20 @@ function between(list, values, at) {
   return width > 0 ? a + ((b - a) * (at - list[i])) / width : a;
 }
 
+// Levels are given in the middle of steps; half a step at either end continues the slope beside it.
+function padEnds(ground, length) {
+  const n = ground.distance.length;
+  if (n < 2) return;
+  const ends = [Math.min(0, ground.distance[0]), Math.max(length, ground.distance[n - 1])];
+  const padded = ["ground", "formation"].map((name) => ends.map((at) => between(ground.distance, ground[name], at)));
+  ["ground", "formation"].forEach((name, k) => {
+    ground[name].unshift(padded[k][0]);
+    ground[name].push(padded[k][1]);
+  });
+  ground.distance.unshift(ends[0]);
+  ground.distance.push(ends[1]);
+}
+
 function readData() {
   const raw = JSON.parse(document.getElementById("geomap-data").textContent);
   const data = unpackTable(raw);
@@ -67,6 +94,13 @@ function readData() {
   data.length = data.corridor.length;
   data.layers = cells.tops.length;
   data.oddsTexts = cells.odds.split(" ");
+  // The base of the deepest cell of each column: columns under a deep cut reach farther down than others.
+  data.columnBase = cells.from.map((_, column) => {
+    let layer = data.layers - 1;
+    while (layer > 0 && cells.group[column * data.layers + layer] < 0) layer -= 1;
+    return cells.bases[layer];
+  });
+  padEnds(data.ground, data.length);
   data.hasFormation = steps.formation.some((level) => level !== null);
 
   data.stepAt = (distance) => Math.min(Math.max(lastAtOrBelow(steps.from, distance), 0), steps.from.length - 1);

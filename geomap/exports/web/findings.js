@@ -26,7 +26,7 @@ function makeFindings(data) {
       cell("Boring, sample", isolated(findings.boring[i] || ""), " ", isolated(findings.sample[i] || "")),
       cell("Found", isolated(findings.found[i] || "nothing")),
       cell("Allowed", isolated(findings.allowed[i] || "")),
-      cell("Action", findings.action[i] || ""),
+      cell("Action", (findings.action[i] || "").replaceAll("_", " ")),
       cell("What to do", isolated(findings.advice[i] || "")),
     );
   }

@@ -1,9 +1,16 @@
 // The legend beside the choice of color: only what occurs, in color, hatch and letters.
 
+const MOST_NAMED = 7;
+
 function drawLegend(mode, colors, data) {
-  const items = colors.present(mode).map((item) => {
-    const name = item.symbol && item.name !== item.symbol ? item.name : item.symbol ? "" : item.name;
-    return element("li", null, swatch(item), item.symbol ? element("b", null, item.symbol) : null, name ? element("span", null, name) : null);
+  const present = colors.present(mode);
+  // A dozen groups with their names would push the drawings off the screen: letters then stand alone, and the
+  // names are in the card of soil groups.
+  const named = present.length <= MOST_NAMED;
+  const items = present.map((item) => {
+    const name = item.name === item.symbol ? "" : item.name;
+    const words = name ? element("span", { class: named || !item.symbol ? null : "unseen" }, name) : null;
+    return element("li", { title: name || null }, swatch(item), item.symbol ? element("b", null, item.symbol) : null, words);
   });
   const key = ([kind, name]) => element("li", null, element("i", { class: `key ${kind}` }), element("span", null, name));
   const formation = data.hasFormation ? [["formation", "formation"]] : [];
@@ -13,4 +20,10 @@ function drawLegend(mode, colors, data) {
   fill("legend", ...items, doubt);
   fill("line-keys", ...[["ground", "ground"], ...formation, ...zone].map(key));
   fill("plan-keys", ...[["hole", "boring"], ...leftOut].map(key));
+}
+
+// All soil groups of the corridor by name, at the end of the cards.
+function drawGroupNames(colors, data) {
+  const items = colors.present(colors.modes.group).filter((item) => item.symbol);
+  fill("group-names", ...items.map((item) => element("li", null, swatch(item, item.symbol), element("span", null, item.name))));
 }

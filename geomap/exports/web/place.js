@@ -8,18 +8,15 @@ function makePlace(data) {
   let preview = null;
   let held = null;
   let boring = null;
-  let waiting = false;
+  let last = "";
 
   const inside = (distance) => Math.min(Math.max(distance, 0), data.length);
 
   // Many pointer events arrive in one frame; the page is redrawn once for all of them.
+  const tellAll = oncePerFrame(() => listeners.forEach((listener) => listener({ place: preview || held, held, boring, source: last })));
   function tell(source) {
-    if (waiting) return;
-    waiting = true;
-    requestAnimationFrame(() => {
-      waiting = false;
-      listeners.forEach((listener) => listener({ place: preview || held, held, boring, source }));
-    });
+    last = source;
+    tellAll();
   }
 
   return {

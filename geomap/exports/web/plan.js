@@ -166,28 +166,45 @@ function makePlan(map, layers, data, colors, chainage, place) {
   });
 
   let mode = colors.modes.group;
-  map.on("zoomend moveend", () => {
+  const relabel = oncePerFrame(() => {
     sizeBorings();
     refreshGrid();
     labels.place(mode);
   });
+  map.on("zoomend moveend", relabel);
   map.on("move", labels.frame);
-  map.setMaxBounds(bounds.pad(1.5));
+
+  // Until the reader moves the plan it keeps showing the whole line, whatever room it is given.
+  let moved = false;
+  map.on("dragstart", () => { moved = true; });
+  map.getContainer().addEventListener("wheel", () => { moved = true; });
+  map.getContainer().addEventListener("click", () => { moved = true; });
+  // Clear of the buttons on the right, the scale and the signs below.
+  const fit = () => map.fitBounds(bounds, { animate: false, paddingTopLeft: [40, 22], paddingBottomRight: [60, 40] });
+  const pan = (point) => {
+    moved = true;
+    map.panTo(point, { animate: !still });
+  };
 
   return {
     color(next) {
       mode = next;
       drawLine(mode);
       layers.borings.bringToFront();
-      labels.place(mode);
+      relabel();
     },
-    // Clear of the buttons on the right, the scale and the signs below.
-    showWhole: () => map.fitBounds(bounds, { animate: false, paddingTopLeft: [40, 22], paddingBottomRight: [60, 40] }),
+    showWhole() {
+      moved = false;
+      fit();
+    },
     showInView(from, to) {
       inView.setLatLngs(to - from < data.length - 1e-6 ? stretch(from, to) : []);
     },
-    panTo: (distance) => map.panTo(pointAt(distance), { animate: !still }),
-    panToBoring: (number) => borings[number] && map.panTo(borings[number], { animate: !still }),
-    resize: () => map.invalidateSize({ animate: false }),
+    panTo: (distance) => pan(pointAt(distance)),
+    panToBoring: (number) => borings[number] && pan(borings[number]),
+    resize() {
+      map.invalidateSize({ animate: false });
+      if (!moved) fit();
+    },
   };
 }

@@ -138,7 +138,7 @@ function makePlanLabels(map, { data, chainage, pointAt, borings, place, runs }) 
       const at = crossing(ends, line.axis, size);
       if (at === null || Math.abs(at - last[line.axis]) < (line.axis === "E" ? 96 : 26)) continue;
       last[line.axis] = at;
-      const label = element("span", { class: `grid-label grid-${line.axis}` }, `${line.axis} ${line.value.toLocaleString("en-US").replaceAll(",", " ")}`);
+      const label = element("span", { class: `grid-label grid-${line.axis}` }, `${line.axis} ${grouped(line.value, " ")}`);
       label.style[line.axis === "E" ? "left" : "top"] = `${at}px`;
       marks.push(label);
     }

@@ -42,8 +42,9 @@ function makeProfile(nodes, data, colors, chainage, lengths, place) {
       marks.lines();
     });
     clip(() => {
-      const taken = marks.visibleBorings().map((hole) => hole.x);
-      cellPainter.letters(mode, (x) => taken.some((at) => x > at - 24 && x < at + 52));
+      // Clear of the columns and of the sample letters to their right.
+      const taken = marks.fittedBorings().map((hole) => [hole.x - 34, hole.x + (hole.lettersFit ? 80 : 34)]);
+      cellPainter.letters(mode, (x) => taken.some(([left, right]) => x > left && x < right));
     });
     marks.axes();
     marks.pegs();
@@ -106,7 +107,7 @@ function makeProfile(nodes, data, colors, chainage, lengths, place) {
     const middle = Math.min(Math.max(x, scale.left + half), scale.right - half);
     const y = scale.bandTop(scale.bands.length) + 1;
     over.fillStyle = "#ffffff"; // clears a peg label beneath, half of which would be hard to read
-    over.fillRect(middle - half - 26, y, 2 * half + 52, 19);
+    over.fillRect(middle - half - 34, y, 2 * half + 68, 19);
     over.fillStyle = "#c4006a";
     over.fillRect(middle - half, y, 2 * half, 19);
     over.fillStyle = "#ffffff";
@@ -115,15 +116,7 @@ function makeProfile(nodes, data, colors, chainage, lengths, place) {
     over.fillText(text, middle, y + 10);
   }
 
-  let waiting = false;
-  function redraw() {
-    if (waiting) return;
-    waiting = true;
-    requestAnimationFrame(() => {
-      waiting = false;
-      draw();
-    });
-  }
+  const redraw = oncePerFrame(draw);
 
   function show(from, to) {
     scale.show(from, to);
@@ -142,6 +135,7 @@ function makeProfile(nodes, data, colors, chainage, lengths, place) {
     scale,
     overview,
     draw,
+    redraw,
     show,
     color(next) {
       mode = next;

@@ -2,7 +2,7 @@
 // letters where there is room for them.
 
 const HATCHED_FROM = 50; // percent
-const LETTER_PIXELS = 128; // from one letter to the next along the line
+const LETTER_PIXELS = 112; // from one letter to the next along the line
 
 function makeCellPainter(context, data, scale) {
   const { cells } = data;
@@ -25,7 +25,7 @@ function makeCellPainter(context, data, scale) {
   function stacks(column, lookOf) {
     const found = [];
     const top = scale.topOf(column);
-    for (let layer = 0; layer < data.layers; layer += 1) {
+    for (let layer = 0; layer < data.layers && cells.tops[layer] < data.columnBase[column]; layer += 1) {
       const look = lookOf(data.cellAt(column, layer));
       const last = found[found.length - 1];
       const bottom = scale.y(top - cells.bases[layer]);
@@ -73,10 +73,13 @@ function makeCellPainter(context, data, scale) {
     context.textAlign = "center";
     context.textBaseline = "middle";
     const count = Math.max(Math.floor((scale.right - scale.left) / LETTER_PIXELS), 1);
+    let last = -1e9;
     for (let k = 0; k < count; k += 1) {
       const middle = scale.left + ((k + 0.5) * (scale.right - scale.left)) / count;
-      const x = [0, 18, -18, 32, -32].map((shift) => middle + shift).find((at) => !isTaken(at));
-      if (x !== undefined) lettersAt(mode, x);
+      const x = [0, 20, -20, 40, -40, 60, -60].map((shift) => middle + shift).find((at) => !isTaken(at) && at - last > 64 && at > scale.left + 26 && at < scale.right - 26);
+      if (x === undefined) continue;
+      lettersAt(mode, x);
+      last = x;
     }
   }
 

@@ -71,15 +71,21 @@ function makeProfileMarks(context, data, scale, colors, chainage, lengths, cellP
       .sort((a, b) => a.x - b.x);
   }
 
-  function boringColumns(open) {
+  // How wide each column may be, and whether letters have room beside it.
+  function fittedBorings() {
     const holes = visibleBorings();
     holes.forEach((hole, i) => {
       const gap = Math.min(hole.x - (holes[i - 1]?.x ?? -1e9), (holes[i + 1]?.x ?? 1e9) - hole.x);
       const room = (holes[i + 1]?.x ?? 1e9) - hole.x;
       hole.width = gap > 60 ? 11 : gap > 24 ? 8 : gap > 10 ? 5 : 3;
-      hole.lettersFit = room > 46 && hole.x + 40 < scale.right;
-      boringColumn(hole, hole.number === open);
+      hole.lettersFit = room > 60 && hole.x + 50 < scale.right;
     });
+    return holes;
+  }
+
+  function boringColumns(open) {
+    const holes = fittedBorings();
+    holes.forEach((hole) => boringColumn(hole, hole.number === open));
     return holes;
   }
 
@@ -101,7 +107,7 @@ function makeProfileMarks(context, data, scale, colors, chainage, lengths, cellP
     }
     let lastLetter = -1e9;
     for (const row of data.samplesOf[number]) {
-      if (samples.top[row] === null) continue;
+      if (samples.top[row] === null || samples.used[row] === 0) continue;
       const base = samples.base[row] ?? samples.top[row];
       context.fillStyle = colors.groupItem(samples.group[row]).color;
       if (used) fillDepths(left, width, top, samples.top[row], base, 3);
@@ -230,5 +236,5 @@ function makeProfileMarks(context, data, scale, colors, chainage, lengths, cellP
     }
   }
 
-  return { embankment, lines, boringColumns, placeNames, drawNames, visibleBorings, axes, pegs };
+  return { embankment, lines, boringColumns, placeNames, drawNames, fittedBorings, axes, pegs };
 }

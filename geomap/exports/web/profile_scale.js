@@ -5,7 +5,6 @@ const BAND_HEIGHT = 17;
 
 function makeProfileScale(data) {
   const { cells, borings } = data;
-  const deepest = cells.bases.length ? cells.bases[cells.bases.length - 1] : 0;
   const groundOf = (column) => cells.ground[column] ?? 0;
   const scale = { from: 0, to: data.length, byDepth: false, width: 0, height: 0 };
 
@@ -39,7 +38,7 @@ function makeProfileScale(data) {
     const last = data.columnAt(scale.to);
     for (let column = first; column <= last && column < cells.from.length; column += 1) {
       include(scale.topOf(column));
-      include(scale.topOf(column) - deepest);
+      include(scale.topOf(column) - data.columnBase[column]);
     }
     data.ground.distance.forEach((distance, i) => {
       if (distance < scale.from || distance > scale.to || data.ground.formation[i] === null) return;
@@ -76,8 +75,9 @@ function makeProfileScale(data) {
   // Depth below ground under a pixel, or null above the ground and below the deepest cell.
   scale.depthAt = (distance, y) => {
     if (y < scale.top || y > scale.bottom) return null;
-    const depth = scale.topOf(data.columnAt(distance)) - scale.level(y);
-    return depth < 0 || depth > deepest ? null : depth;
+    const column = data.columnAt(distance);
+    const depth = scale.topOf(column) - scale.level(y);
+    return depth < 0 || depth > data.columnBase[column] ? null : depth;
   };
   scale.bandTop = (row) => scale.bottom + 4 + row * BAND_HEIGHT;
   return scale;

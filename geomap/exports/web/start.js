@@ -16,6 +16,7 @@
   const findings = makeFindings(data);
   const stretchCard = makeStretchCard(data, colors, chainage, lengths);
   const boringCard = makeBoringCard(data, chainage, lengths, findings, stretchCard);
+  drawGroupNames(colors, data);
   drawSummary(data, lengths, chainage, findings);
 
   const select = byId("color-by");
@@ -88,14 +89,23 @@
 
   function resize() {
     plan.resize();
-    profile.draw();
+    profile.redraw();
   }
-  plan.showWhole();
   color();
+  plan.resize(); // the legend has just taken its room
   profile.show(0, data.length);
   new ResizeObserver(resize).observe(byId("views"));
-  window.addEventListener("beforeprint", resize);
-  window.addEventListener("afterprint", resize);
+  // The sheet has another size than the screen, and the printer does not wait for the next frame.
+  const details = document.querySelector(".findings details");
+  let wasOpen = false;
+  for (const moment of ["beforeprint", "afterprint"]) {
+    window.addEventListener(moment, () => {
+      if (moment === "beforeprint") wasOpen = details.open;
+      details.open = moment === "beforeprint" || wasOpen;
+      plan.resize();
+      profile.draw();
+    });
+  }
   requestAnimationFrame(() => {
     document.documentElement.dataset.ready = "yes";
     performance.mark("geomap-ready");

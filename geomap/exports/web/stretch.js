@@ -74,10 +74,13 @@ function makeStretchCard(data, colors, chainage, lengths) {
     ];
   }
 
+  const layersOf = (column) => data.layerAt(data.columnBase[column] - 1e-6) + 1;
+
   function ladder(column, layer, distance) {
     const formationDepth = data.formationAt(distance) === null ? null : data.groundAt(distance) - data.formationAt(distance);
     const box = element("div", { class: "ladder", role: "img", "aria-label": "Odds of the soil groups in every layer from the ground down" });
-    for (let k = 0; k < data.layers; k += 1) {
+    const layers = layersOf(column);
+    for (let k = 0; k < layers; k += 1) {
       const bar = element("div", { class: k === layer ? "rung here" : "rung" });
       // In legend order, not likeliest first: the same group then stands above itself from rung to rung.
       for (const { group, percent } of data.oddsOf(data.cellAt(column, k)).sort((a, b) => a.group - b.group)) {
@@ -89,7 +92,7 @@ function makeStretchCard(data, colors, chainage, lengths) {
       box.append(bar);
     }
     ladderLetters(column).forEach((letters) => box.append(letters));
-    const depth = cells.bases[data.layers - 1];
+    const depth = cells.bases[layers - 1];
     const mark = (at, kind, text) => {
       if (at === null || at < 0 || at > depth) return;
       const line = element("i", { class: `ladder-mark ${kind}` }, text);
@@ -107,15 +110,16 @@ function makeStretchCard(data, colors, chainage, lengths) {
   function ladderLetters(column) {
     const first = (layer) => (data.oddsOf(data.cellAt(column, layer))[0] || { group: -1 }).group;
     const found = [];
-    for (let top = 0, layer = 1; layer <= data.layers; layer += 1) {
-      if (layer < data.layers && first(layer) === first(top)) continue;
-      if ((layer - top) / data.layers > 0.07 && first(top) >= 0) {
+    const layers = layersOf(column);
+    for (let top = 0, layer = 1; layer <= layers; layer += 1) {
+      if (layer < layers && first(layer) === first(top)) continue;
+      if ((layer - top) / layers > 0.07 && first(top) >= 0) {
         const item = colors.groupItem(first(top));
         const odds = data.oddsOf(data.cellAt(column, (top + layer - 1) >> 1)).sort((a, b) => a.group - b.group);
         const before = odds.filter((share) => share.group < first(top)).reduce((sum, share) => sum + share.percent, 0);
         const own = odds.find((share) => share.group === first(top));
         const letters = element("b", { class: "ladder-letters" }, item.symbol);
-        letters.style.top = `${(50 * (top + layer)) / data.layers}%`;
+        letters.style.top = `${(50 * (top + layer)) / layers}%`;
         letters.style.left = `${before + (own ? own.percent : 0) / 2}%`;
         letters.style.color = item.text;
         found.push(letters);
@@ -185,7 +189,7 @@ function makeStretchCard(data, colors, chainage, lengths) {
           { class: "facts" },
           data.hasFormation ? formation(step, distance) : row("Ground", `level ${lengths.text(data.groundAt(distance))}`),
           material(step),
-          group >= 0 ? row("Mostly", swatch(legend.groups[group], legend.groups[group].symbol), ` ${legend.groups[group].name}, ${percentText(steps.probability[step])}`) : null,
+          group >= 0 ? row("Mostly", swatch(legend.groups[group], legend.groups[group].symbol), ` ${legend.groups[group].name}${steps.probability[step] < 0 ? "" : `, ${steps.probability[step]}%`}`) : null,
           steps.aashto[step] ? row("AASHTO", isolated(steps.aashto[step])) : null,
           cbr(step),
           row("Evidence", swatch(seen), ` ${seen.name}`),

@@ -40,7 +40,7 @@ function drawSummary(data, lengths, chainage, findings) {
       part.style.background = item.color;
       bar.append(part);
     }
-    const head = ["", "Length", "Observed", "Inferred", "No data"].map((name) => element("th", { scope: "col" }, name));
+    const head = ["Verdict", "Length", "Observed", "Inferred", "No data"].map((name) => element("th", { scope: "col" }, name));
     const body = rows.map(({ item, parts, sum }) =>
       element("tr", null, element("th", { scope: "row" }, swatch(item), " ", item.name), element("td", null, lengths.long(sum)), ...parts.map((part) => element("td", null, part ? lengths.long(part) : "–"))),
     );

@@ -1,0 +1,365 @@
+"""The page in a browser: what a person does with it, by mouse and by keyboard, without a network."""
+
+from __future__ import annotations
+
+import dataclasses
+from collections.abc import Callable
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from geomap.results import Results
+from geomap.tables import schema
+from tests.browser.conftest import WIDTHS, Opened, Write
+from tests.unit.exports.sample import BORING_DISTANCE_M, STEP_M, STEPS, chainage, sample_results
+from tests.unit.exports.web_corridor import large_results
+
+pytestmark = pytest.mark.browser
+
+Open = Callable[..., Opened]
+LENGTH_M = STEPS * STEP_M
+HOSTILE = {
+    "template": "{{7*7}}",
+    "script": "</script><script>alert(1)</script>",
+    "image": "<img src=x onerror=alert(1)>",
+    "literal": "`${alert(1)}`",
+    "formula": "=cmd|' /C calc'!A0",
+    "long": "W" * 300,
+    "right_to_left": "\u202e\u05e7\u05d9\u05d3\u05d5\u05d7 12 \u0628\u0626\u0631",
+}
+
+
+@pytest.fixture(scope="session")
+def small(written: Write) -> Path:
+    """The page of the invented corridor of 600 m."""
+    return written(sample_results())
+
+
+@pytest.fixture(scope="session")
+def large(written: Write) -> Path:
+    """The page of the constructed corridor of 8 km."""
+    return written(large_results())
+
+
+@pytest.fixture
+def page(open_page: Open, small: Path) -> Opened:
+    return open_page(small)
+
+
+def boring_pixel(page: Opened, distance: float) -> float:
+    """Return the share of the profile's width at which a distance stands, from two places that were read off."""
+    seen = []
+    for share in (0.3, 0.8):
+        page.point(share)
+        seen.append((share, page.distance))
+    (a, at_a), (b, at_b) = seen
+    return a + (b - a) * (distance - at_a) / (at_b - at_a)
+
+
+@pytest.mark.parametrize("width", WIDTHS)
+def test_it_opens_without_a_network_a_request_or_a_complaint(open_page: Open, large: Path, width: int) -> None:
+    page = open_page(large, width)
+    for color in ("group", "suitability", "unsuitable", "evidence"):
+        page.page.select_option("#color-by", color)
+        page.settle()
+        page.shot(f"{width}_{color}")
+    page.page.select_option("#color-by", "group")
+    page.go_to("BH-12")
+    page.shot(f"{width}_boring")
+    page.press("Escape")
+    page.point(0.45)
+    page.shot(f"{width}_stretch")
+    assert page.requests == []
+    assert page.complaints == []
+
+
+@pytest.mark.parametrize("width", WIDTHS)
+def test_nothing_hangs_over_the_side_of_the_window(open_page: Open, large: Path, width: int) -> None:
+    page = open_page(large, width)
+    page.go_to("BH-12")
+    page.point(0.4)
+    assert page.page.evaluate("document.documentElement.scrollWidth") <= width
+
+
+def test_the_title_block_says_what_the_tables_say(page: Opened, results: Results) -> None:
+    assert page.text("#corridor-name") == results.name
+    assert "Issue A, for review" in page.text("#corridor-line")
+    assert page.text("#length") == "600 m"
+    assert page.text("#borings-used") == "3 used, 1 left out"
+    assert [page.text(f"#total-{word}") for word in ("error", "warning", "note")] == ["1", "2", "0"]
+    table = results.tables["subgrade"]
+    for word in ("suitable", "treat", "unsuitable", "not assessed"):
+        meters = int(STEP_M * (table["suitability"] == word).sum())
+        head = page.page.get_by_role("rowheader", name=word, exact=True)
+        row = page.page.locator("#lengths tbody tr").filter(has=head)
+        assert row.locator("td").first.inner_text() == f"{meters} m"
+    for caution in results.cautions:
+        assert caution in page.text("#cautions")
+    assert page.page.locator("#cautions").is_visible()
+
+
+def test_the_pointer_on_the_profile_marks_the_plan_and_the_plan_marks_the_profile(page: Opened) -> None:
+    assert page.on_plan is None
+    page.point(0.62)
+    there = page.distance
+    assert 0 < there < LENGTH_M
+    assert page.on_plan == pytest.approx(there, abs=0.1)
+    mark = page.box(".plan-cursor")
+    page.point(0.2)
+    assert abs(page.distance - there) > 100
+    page.page.mouse.move(mark["x"] + mark["width"] / 2, mark["y"] + mark["height"] / 2)
+    page.settle()
+    assert page.distance == pytest.approx(there, abs=3.0)  # one pixel of the plan is about 2 m
+    assert page.on_plan == pytest.approx(there, abs=3.0)
+
+
+def test_a_click_holds_the_place_and_pans_the_plan(page: Opened) -> None:
+    page.point(0.1)
+    page.page.mouse.down()
+    page.page.mouse.up()
+    page.settle()
+    held = page.distance
+    page.point(0.9)
+    assert page.distance > held + 100
+    page.page.mouse.move(1300, 700)
+    page.settle()
+    assert page.distance == pytest.approx(held, abs=0.1)
+    page.page.wait_for_timeout(400)  # the plan glides
+    mark, plan = page.box(".plan-cursor"), page.box(".folium-map")
+    assert mark["x"] + mark["width"] / 2 == pytest.approx(plan["x"] + plan["width"] / 2, abs=3)
+
+
+def test_the_stretch_card_says_what_the_tables_say(page: Opened, results: Results) -> None:
+    for step in (3, 24, 29, 47):
+        row = results.tables["subgrade"].iloc[step - 1]
+        page.go_to(chainage((step - 0.5) * STEP_M))
+        card = page.text("#stretch")
+        assert f"Chainage {chainage((step - 0.5) * STEP_M)}" in card
+        assert page.text("#stretch .verdict-word") == row["suitability"]
+        assert f"{'cut' if row['cut_fill_m'] < 0 else 'fill'} {abs(row['cut_fill_m']):.2f} m" in card
+        assert f"Evidence {row['evidence']}" in card
+        assert f"{row['nearest_boring']}, {row['nearest_boring_m']:.0f} m away" in card
+        if row["p_unsuitable"] > 0:
+            assert f"unsuitable {round(100 * row['p_unsuitable'])}%" in card
+        trace = results.tables["trace"].query("step == @step").sort_values("weight", ascending=False)
+        first = page.page.locator(".behind tbody tr").first.inner_text()
+        assert f"{100 * trace['weight'].iloc[0]:.1f}%" in first
+        assert page.page.locator(".behind tbody tr").count() == len(trace)
+        assert trace["lab_sheet"].iloc[-1] in card
+
+
+def test_the_odds_are_those_of_the_cell_pointed_at(page: Opened, results: Results) -> None:
+    page.go_to(chainage(295.0))
+    for _ in range(20):
+        page.press("ArrowUp")
+    page.press("ArrowDown", times=4)
+    cells = results.tables["profile_cells"]
+    cell = cells.loc[(cells["from_distance_m"] == 290.0) & (cells["top_depth_m"] == 2.0)].iloc[0]
+    assert "Soil group 2.00 to 2.50 m below ground" in page.text("#stretch")
+    likeliest = page.page.locator("#stretch .share-list").last.locator("li").first
+    assert cell["soil_group"] in likeliest.inner_text()
+    assert f"{100 * cell['probability']:.0f}%" in likeliest.inner_text()
+
+
+def test_a_click_on_a_boring_in_the_plan_opens_its_card(page: Opened) -> None:
+    page.go_to("BH-2")
+    mark = page.box(".plan-cursor")
+    page.page.click("#close-boring")
+    page.settle()
+    assert not page.page.locator("#boring").is_visible()
+    page.page.mouse.click(mark["x"] + mark["width"] / 2, mark["y"] + mark["height"] / 2)
+    page.settle()
+    card = page.text("#boring")
+    assert card.startswith("Boring BH-2")
+    assert "12+290, 2.5 m right" in card
+    assert "water at 1.2 m, rising" in card
+    assert "moisture 210%, organic 64%, CBR soaked <2%" in card
+    assert "by visual, A-8" in card
+    assert "LAB-005" in card
+    assert "dark fibrous peat" in card
+    assert "confirm with the laboratory" in card
+
+
+def test_a_click_on_a_boring_in_the_profile_opens_its_card(page: Opened) -> None:
+    page.point(boring_pixel(page, float(BORING_DISTANCE_M[2])), 0.45)
+    assert "over-boring" in (page.page.get_attribute("#profile", "class") or "")
+    page.page.mouse.down()
+    page.page.mouse.up()
+    page.settle()
+    assert page.text("#boring").startswith("Boring BH-3")
+    assert "not determined" in page.text("#boring")
+    assert "fines_pct is missing" in page.text("#boring")
+
+
+def test_a_boring_left_out_says_why(page: Opened) -> None:
+    page.go_to("BH-4")
+    assert "Left out: 118 m from the alignment, farther than half_width_m 75" in page.text("#boring")
+
+
+@pytest.mark.parametrize("distance", [0.0, 7.5, 299.9, 300.0, 451.5, 600.0])
+def test_go_to_finds_every_chainage_across_the_equation(page: Opened, distance: float) -> None:
+    page.go_to(chainage(distance))
+    assert page.distance == pytest.approx(distance, abs=0.06)
+    label = page.text("#stretch h2").removeprefix("Chainage ")
+    assert label == chainage(round(distance, 1))
+
+
+def test_go_to_answers_what_does_not_exist(page: Opened) -> None:
+    page.go_to("12+325")  # swallowed by the equation: 12+300 is followed by 12+350
+    assert "No such chainage or boring" in page.text("#go-to-answer")
+    assert "12+000 to 12+650" in page.text("#go-to-answer")
+    page.go_to("12+360")
+    assert page.text("#go-to-answer") == ""
+
+
+def test_a_chainage_that_stands_twice_is_said(open_page: Open, written: Write, results: Results) -> None:
+    overlap = dataclasses.replace(results, chainage_breaks=((0.0, 0.0), (300.0, 200.0)))
+    page = open_page(written(overlap))
+    page.go_to("0+250")
+    assert page.distance == pytest.approx(250.0)
+    assert "stands 2 times" in page.text("#go-to-answer")
+
+
+def test_the_colors_change_with_their_legend(page: Opened) -> None:
+    seen = {}
+    for color in ("group", "suitability", "unsuitable", "evidence"):
+        page.page.select_option("#color-by", color)
+        page.settle()
+        seen[color] = page.text("#legend")
+    assert "PT peat" in seen["group"]
+    assert "less sure" in seen["group"]
+    assert seen["suitability"] == "suitable treat unsuitable not assessed"
+    assert seen["unsuitable"].startswith("below 10%")
+    assert seen["evidence"] == "observed inferred no data"
+
+
+def test_the_keyboard_alone_reads_the_line(page: Opened) -> None:
+    for _ in range(30):
+        page.page.keyboard.press("Tab")
+        if page.page.evaluate("document.activeElement.id") == "profile":
+            break
+    assert page.page.evaluate("document.activeElement.id") == "profile"
+    assert page.page.evaluate("getComputedStyle(document.activeElement).outlineStyle") == "solid"
+    page.press("Home")
+    assert page.distance == 0
+    page.press("ArrowRight")
+    assert page.distance == pytest.approx(1.5 * STEP_M)
+    page.press("Shift+ArrowRight")
+    assert page.distance == pytest.approx(11.5 * STEP_M)
+    spoken = page.page.get_attribute("#profile", "aria-valuetext") or ""
+    assert spoken.startswith(f"Chainage {chainage(115.0)}, ")
+    page.press("PageDown")
+    assert page.text("#boring").startswith("Boring BH-2")
+    page.press("Escape")
+    assert page.on_plan is None
+    assert not page.page.locator("#boring").is_visible()
+
+
+def test_wheel_zooms_and_drag_moves_the_profile(page: Opened) -> None:
+    def span() -> tuple[float, float]:
+        page.point(0.2)
+        left = page.distance
+        page.point(0.8)
+        return left, page.distance
+
+    left, right = span()
+    page.point(0.5)
+    page.page.mouse.wheel(0, -240)
+    page.settle()
+    closer = span()
+    assert closer[1] - closer[0] < 0.9 * (right - left)
+    box = page.box("#profile")
+    page.point(0.5)
+    page.page.mouse.down()
+    page.page.mouse.move(box["x"] + 0.4 * box["width"], box["y"] + 60, steps=4)
+    page.page.mouse.up()
+    page.settle()
+    moved = span()
+    assert moved[0] > closer[0] + 1
+    assert moved[1] - moved[0] == pytest.approx(closer[1] - closer[0], abs=0.3)
+    page.page.click("#zoom-all")
+    page.settle()
+    assert span() == pytest.approx((left, right), abs=0.1)
+
+
+def test_depth_below_ground_can_be_the_vertical_axis(page: Opened) -> None:
+    before = page.text("#exaggeration")
+    page.page.select_option("#vertical", "depth")
+    page.settle()
+    assert page.text("#exaggeration").startswith("Vertical exaggeration ")
+    assert page.text("#exaggeration") != before
+
+
+def test_findings_filter_by_severity(page: Opened) -> None:
+    page.page.locator("#findings summary").click()
+    rows = page.page.locator("#findings-rows tr")
+    assert rows.count() == 3
+    page.page.select_option("#findings-severity", "error")
+    assert rows.count() == 1
+    assert "118 m" in rows.first.inner_text()
+    assert "75 m or nearer" in rows.first.inner_text()
+
+
+def test_lengths_are_in_feet_where_the_corridor_is(open_page: Open, written: Write) -> None:
+    page = open_page(written(sample_results(length_unit="ft")))
+    assert page.text("#length") == "1,969 ft"  # 600 / 0.3048
+    page.go_to("BH-2")
+    assert "14.8 ft" in page.text("#boring")  # 4.5 / 0.3048
+
+
+def test_without_a_formation_the_page_shows_groups_by_depth(open_page: Open, written: Write, results: Results) -> None:
+    judged = ["formation_level_m", "cut_fill_m", "subgrade_material", "suitability", "soil_group", "probability"]
+    judged += ["p_suitable", "p_treat", "p_unsuitable", "p_not_assessed"]
+    steps = schema.conform(results.tables["subgrade"].drop(columns=judged), schema.layers()["subgrade"])
+    ground = results.tables["ground"].assign(formation_level_m=np.nan)
+    bare = dataclasses.replace(results, tables={**results.tables, "subgrade": steps, "ground": ground})
+    page = open_page(written(bare))
+    page.point(0.5)
+    assert "No formation was given" in page.text("#lengths")
+    assert "CL" in page.text("#legend")
+    assert "formation" not in page.text("#line-keys")
+    assert "Soil group" in page.text("#stretch")
+    assert page.complaints == []
+
+
+@pytest.mark.parametrize("kind", HOSTILE)
+def test_hostile_names_are_shown_and_do_nothing(open_page: Open, written: Write, small: Path, kind: str) -> None:
+    name = HOSTILE[kind]
+    globals_of = "Object.keys(window).sort().join()"
+    benign = open_page(small).page.evaluate(globals_of)
+    page = open_page(written(sample_results(name=name, first=name)))
+    page.press("PageDown")
+    page.point(0.3)
+    page.point(0.15)
+    assert page.page.locator("#boring-title b").text_content() == name
+    assert page.page.locator("#corridor-name").text_content() == name
+    assert page.dialogs == []
+    assert page.requests == []
+    assert page.complaints == []
+    assert page.page.evaluate(globals_of) == benign
+    assert page.page.evaluate("document.documentElement.scrollWidth") <= 1440
+    header, plan = page.box(".title-block"), page.box(".plan")
+    assert header["height"] < 200
+    assert plan["height"] > 150
+    page.shot(f"hostile_{kind}")
+
+
+def test_a_finger_moves_the_profile_and_opens_a_place(open_page: Open, large: Path) -> None:
+    page = open_page(large, 390, has_touch=True, is_mobile=True)
+    page.page.locator("#profile").scroll_into_view_if_needed()
+    box = page.box("#profile")
+    page.page.touchscreen.tap(box["x"] + 0.5 * box["width"], box["y"] + 0.3 * box["height"])
+    page.settle()
+    assert 3000 < page.distance < 6000
+    assert page.page.locator("#stretch").is_visible()
+
+
+def test_the_printed_sheet_keeps_the_drawings_and_drops_the_tools(open_page: Open, large: Path) -> None:
+    page = open_page(large)
+    page.page.emulate_media(media="print")
+    page.settle()
+    assert page.page.locator("#profile").is_visible()
+    assert page.page.locator("#cautions").is_visible()
+    assert not page.page.locator("#go-to").is_visible()
+    page.shot("print")

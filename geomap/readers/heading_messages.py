@@ -52,7 +52,10 @@ def missing_text(
     means: Sequence[Reading | UnknownUnit | None],
     place: str,
 ) -> str:
-    """Return the message for required headings that no cell answers."""
+    """Return the message for required headings that no cell answers, or where none at all is known."""
+    if not missing:
+        known = ", ".join(layout.columns)
+        return f"{place}: found the headings {listed(row)}; allowed: one at least of {known}; rename the headings"
     names = spellings(layout)
     wanted = "; ".join(f"{name} (or {', '.join(names[name][1 : 1 + SHOWN_ALIASES])})" for name in missing)
     hints = [

@@ -96,7 +96,8 @@ def fit(
     best = (False, 0, 0)
     for index, row in enumerate(rows[:HEADING_SEARCH_ROWS]):
         means = {item.column for item in readings(row, layout, mapped) if isinstance(item, Reading)}
-        score = (set(layout.required) <= means | set(given), len(means), index)
+        is_whole = set(layout.required) <= means | set(given) and bool(means)
+        score = (is_whole, len(means), index)
         best = score if score[:2] > best[:2] else best
     return best
 

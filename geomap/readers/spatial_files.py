@@ -49,7 +49,10 @@ def check_shapefile(path: Path) -> None:
         With what it is instead, or what is missing.
     """
     _check(path, first_bytes(path), b"\x00\x00\x27\x0a", "a shapefile")
-    endings = {item.suffix.lower() for item in path.parent.iterdir() if item.stem == path.stem}
+    try:
+        endings = {item.suffix.lower() for item in path.parent.iterdir() if item.stem == path.stem}
+    except OSError:  # a folder that may be entered and not listed: GDAL will say what it misses
+        return
     missing = [path.stem + part for part in SHAPEFILE_PARTS if part not in endings]
     if missing:
         allowed = "the parts " + ", ".join(SHAPEFILE_PARTS) + " beside it"

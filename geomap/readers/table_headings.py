@@ -98,7 +98,7 @@ def resolve(
     means = [None if item is not None and item.column in given else item for item in readings(row, layout, mapped)]
     positions = _positions(row, means, place)
     missing = [name for name in layout.required if name not in positions and name not in given]
-    if missing:
+    if missing or not (positions or given):
         raise InputError(missing_text(row, layout, missing, means, str(place)))
     taken = {}
     notes = _notes(row, labels, means, place)

@@ -161,8 +161,15 @@ def _texts(sheet: Any, path: Path, count: int | None = None) -> list[list[str]]:
 def _text(cell: Any) -> str:
     value = cell.value
     if isinstance(value, float | int) and not isinstance(value, bool):
-        return text_from_value(value, is_percent=is_percent_format(cell.number_format))
+        return text_from_value(value, is_percent=is_percent_format(_number_format(cell)))
     return text_from_value(value)
+
+
+def _number_format(cell: Any) -> str:
+    try:
+        return str(cell.number_format)
+    except LookupError:  # a style that the workbook does not hold
+        return "General"
 
 
 @lru_cache(maxsize=1024)

@@ -156,6 +156,14 @@ def test_a_missing_heading_is_explained(tmp_path: Path) -> None:
     assert 'columns = { boring = "your heading" }' in text
 
 
+def test_a_table_that_requires_no_heading_still_needs_one_that_is_known(tmp_path: Path) -> None:
+    assert list(read(text_file(tmp_path, "Weather,LL\nrain,35\n"), "lab_results").cells) == ["liquid_limit_pct"]
+    with pytest.raises(
+        InputError, match="found the headings 'Weather', 'Day'; allowed: one at least of boring, sample"
+    ):
+        read(text_file(tmp_path, "Weather,Day\nrain,35\n"), "lab_results")
+
+
 def test_an_unknown_unit_on_a_column_that_is_not_required_is_a_finding(tmp_path: Path) -> None:
     table = read(text_file(tmp_path, "boring,top,UCS (bar)\nBH1,1,2\n"))
     assert "unconfined_kpa" not in table.cells

@@ -88,6 +88,11 @@ def test_the_only_sheet_that_has_the_headings_is_taken(tmp_path: Path) -> None:
     assert read(path).sheet == "Results"
 
 
+def test_a_sheet_without_any_known_heading_is_no_choice_for_a_table_that_requires_none(tmp_path: Path) -> None:
+    path = workbook(tmp_path, Cover=[["Soils laboratory"]], Results=[["LL", "PL"], [35, 20]])
+    assert read(path, "lab_results").sheet == "Results"
+
+
 def test_a_sheet_may_be_named_in_any_case(tmp_path: Path) -> None:
     path = workbook(tmp_path, May=LAB, June=LAB)
     assert read(path, sheet="june").sheet == "June"

@@ -246,7 +246,8 @@ def _show_findings(findings: Any, most: int, more_by: str) -> None:
         "findings: " + ", ".join(f"{counts[s]} {s}{'s' if counts[s] > 1 else ''}" for s in SEVERITIES if s in counts)
     )
     rank = findings["severity"].map({s: k for k, s in enumerate(SEVERITIES)})
-    for row in findings.iloc[rank.argsort(kind="stable")].fillna("").head(most).itertuples():
+    texts = findings.astype("string").fillna("")
+    for row in texts.iloc[rank.argsort(kind="stable")].head(most).itertuples():
         number = f"row {row.row_number}" if row.row_number else ""
         place = ", ".join(str(part) for part in (row.file, row.sheet, number, row.heading) if part)
         who = " ".join(str(part) for part in (row.boring, row.sample) if part)

@@ -21,7 +21,14 @@ from geomap.profile.cells import step_edges
 from geomap.ratings import rules
 from geomap.soils.properties import describe
 from geomap.tables import schema
-from geomap.tables.findings import together
+from geomap.tables.findings import Check, together
+
+NO_BORING = Check(
+    "no boring to work with",
+    "block",
+    "at least one boring on the corridor",
+    "settle the findings about borings, if there are any, or fill in the table",
+)
 
 Tell = Callable[[str], None]
 
@@ -89,7 +96,7 @@ def check(path: str | Path, tell: Tell = silent) -> Gate:
     design = corridor.formation
     levels = levels_along(
         (edges[:-1] + edges[1:]) / 2,
-        {name: part.used("levels") for name, part in given.items()},
+        {name: (", ".join(corridor.tables()[name].files), part.used("levels")) for name, part in given.items()},
         taken.used("borings").join(placed["distance_m"]),
         chainage,
         Drawing(design.reference, design.construction_thickness_m, design.pipe_diameter_m) if design else None,
@@ -99,6 +106,8 @@ def check(path: str | Path, tell: Tell = silent) -> Gate:
     judged = judge(taken, job)
     if "uscs_symbol" in judged:
         taken = intake.agree(taken, judged, judged)
+    if not len(taken.used("borings")):
+        of_crs = together([of_crs, NO_BORING.row("", "no boring of use", file=", ".join(corridor.borings.files))])
     found = together([of_line, taken.findings, of_crs, *(part.findings for part in given.values()), levels.findings])
     counts = pd.concat([taken.counts(), *(part.counts().assign(table=name) for name, part in given.items())])
     return Gate(job, line, chainage, taken, placed, judged, edges, levels, found, counts.reset_index(drop=True))

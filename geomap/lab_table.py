@@ -69,6 +69,8 @@ def classify_file(table: Path, target: Path, systems: Sequence[str], sheet: str,
     classes = classes.set_axis(raw.original.index)
     classes.columns = [f"{n}_geomap" if n in raw.original.columns else n for n in classes.columns]
     tell("writing")
+    texts = classes.select_dtypes("category").columns
+    classes[texts] = classes[texts].astype("string")
     table_files.save(pd.concat([raw.original, classes], axis=1), target)
     counts = {
         system.NAME: int(classes.filter(regex=f"^{system.COLUMN}(_geomap)?$").notna().sum().sum()) for system in chosen

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -65,7 +66,7 @@ class Along:
 
 def levels_along(
     distance_m: Floats,
-    tables: dict[str, pd.DataFrame],
+    tables: Mapping[str, tuple[str, pd.DataFrame]],
     collars: pd.DataFrame,
     chainage: Chainage,
     drawing: Drawing | None,
@@ -78,7 +79,8 @@ def levels_along(
     distance_m
         Where, ascending [m].
     tables
-        Typed rows of the layout ``levels`` under ``ground`` and ``formation``, as far as the corridor has them.
+        File names and typed rows of the layout ``levels`` under ``ground`` and ``formation``, as far as the corridor
+        has them.
     collars
         ``distance_m`` and ``ground_level_m`` of the borings that are used: they serve where no table reaches.
     chainage
@@ -92,31 +94,31 @@ def levels_along(
     from_collars = ground_from_collars(collars["distance_m"], collars["ground_level_m"])
     table: LevelTable | None = None
     if "ground" in tables:
-        table, found = levels_from_table(tables["ground"], chainage, "ground")
-        parts.append(found)
+        table, found = levels_from_table(tables["ground"][1], chainage, "ground")
+        parts.append(found.fillna({"file": tables["ground"][0]}))
     ground = from_collars.level_at(distance_m) if table is None else table.level_at(distance_m)
     basis = from_collars.basis if table is None else table.basis
     bare = np.isnan(ground)
     if table is not None and bare.any():
         ground = np.where(bare, from_collars.level_at(distance_m), ground)
         basis += "; beyond it from collar levels of borings"
-        parts.append(_short(tables["ground"], bare))
+        parts.append(_short(tables["ground"][0], bare))
     is_known = bool(np.isfinite(ground).any())
     if not is_known:
         ground, basis = np.zeros(len(distance_m)), UNKNOWN_BASIS
     formation, width = np.full(len(distance_m), np.nan), np.full(len(distance_m), width_m)
     if drawing is not None and not is_known:
-        parts.append(NEEDS_GROUND.row("level_m", "no ground level", file=tables["formation"]["file"].iloc[0]))
+        parts.append(NEEDS_GROUND.row("level_m", "no ground level", file=tables["formation"][0]))
     elif drawing is not None:
-        design, found = levels_from_table(tables["formation"], chainage, "formation")
+        file, rows = tables["formation"]
+        design, found = levels_from_table(rows, chainage, "formation")
         given, width = design.level_at(distance_m), design.width_at(distance_m, width_m)
         formation = formation_level(given, drawing.reference, drawing.thickness_m, drawing.pipe_diameter_m, ground)
-        parts += [found, _short(tables["formation"], np.isnan(formation))]
+        parts += [found.fillna({"file": file}), _short(file, np.isnan(formation))]
     return Along(ground, formation, width, basis, is_known, together(parts))
 
 
-def _short(table: pd.DataFrame, bare: NDArray[np.bool_]) -> pd.DataFrame:
+def _short(file: str, bare: NDArray[np.bool_]) -> pd.DataFrame:
     if not bare.any():
         return pd.DataFrame()
-    file = table["file"].iloc[0] if len(table) else ""
     return SHORT_TABLE.row("level_m", f"none for {bare.mean():.0%} of the line", file=file)

@@ -116,7 +116,7 @@ def levels_from_table(table: pd.DataFrame, chainage: Chainage, what: str = "leve
     ]
     used = np.flatnonzero(usable & ~repeated & ~same)
     if not len(used):
-        name = str(table["file"].iloc[0]) if len(table) and "file" in table else ""
+        name = str(table["file"].iloc[0]) if len(table) and "file" in table else pd.NA
         parts.append(NONE_USED.row("level_m", f"{len(table)} rows, none of use", file=name))
     used = used[np.argsort(distance[used], kind="stable")]
     basis = f"{what} from a table of {len(used)} places, straight between them"

@@ -245,7 +245,7 @@ def test_us_survey_feet_and_stations_by_the_hundred(tmp_path: Path) -> None:
     tables = dict(small.TABLES)
     east, north = 1_000_000, 200_000
     tables["line.csv"] = (("x", "y"), [(east, north), (east + 2000, north)])
-    head, rows = small.TABLES["borings.csv"]
+    _head, rows = small.TABLES["borings.csv"]
     moved = [
         (n, east + (x - small.X) / foot, north + (y - small.Y) / foot, z / foot, d / foot, t)
         for n, x, y, z, d, t in rows

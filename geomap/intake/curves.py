@@ -9,6 +9,7 @@ import numpy as np
 import pandas as pd
 
 from geomap.intake.entries import Flags, Intake, Texts
+from geomap.intake.gathering import EVERY_SEVERITY, gathered
 from geomap.tables import schema
 from geomap.tables.findings import Check
 
@@ -34,6 +35,13 @@ RETAINED_EACH = Check(
     "reject",
     "percent passing that falls with the size",
     "the curve is left out; its values add to 100 as percent retained on each sieve would: enter percent passing",
+)
+WITH_CURVE = Check(
+    "left out with its curve",
+    "reject",
+    "percent passing that falls with the size",
+    "settle the finding about the curve",
+    "note",
 )
 SMALL_RISE = Check(
     "passing rises by rounding",
@@ -74,6 +82,9 @@ def falling(intake: Intake) -> Intake:
     every = points.rows.index
     found = pd.Series(words, rows.index).reindex(every).to_numpy(object)
     parts = [points.findings_of(c, _on(every, rows, m), "passing_pct", found=found) for c, m in masks.items()]
+    others = _on(every, rows, bad & ~worst) & points.rows["in_layout"].to_numpy(dtype=bool)
+    notes = [points.findings_of(WITH_CURVE, others, "boring", "sample")]
+    parts.append(gathered(notes, limit=1, severities=EVERY_SEVERITY))
     points = points.leave_out(_on(every, rows, bad), "its gradation curve rises as the size falls")
     return intake.having(points, *parts)
 

@@ -7,8 +7,9 @@ status says so), set aside a value (the value becomes missing, the cell keeps it
 from __future__ import annotations
 
 import dataclasses
+import functools
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 import numpy as np
 import pandas as pd
@@ -149,12 +150,17 @@ class Intake:
     ----------
     entries
         The tables by layout name.
-    findings
-        One row for each query, in the layout of ``layers.findings``.
+    parts
+        Findings so far, in the order of the checks.
     """
 
     entries: Mapping[str, Entries]
-    findings: pd.DataFrame = field(default_factory=lambda: findings.conform(pd.DataFrame()))
+    parts: tuple[pd.DataFrame, ...] = ()
+
+    @functools.cached_property
+    def findings(self) -> pd.DataFrame:
+        """One row for each query, in the layout of ``layers.findings``."""
+        return findings.together(self.parts)
 
     def __contains__(self, name: str) -> bool:
         return name in self.entries
@@ -165,7 +171,7 @@ class Intake:
     def having(self, entries: Entries, *parts: pd.DataFrame) -> Intake:
         """Return the intake with one table replaced or added, and further findings."""
         tables = {**self.entries, entries.layout: entries}
-        return Intake(tables, findings.together([self.findings, *parts]))
+        return Intake(tables, (*self.parts, *(part for part in parts if len(part))))
 
     def rows(self, name: str) -> pd.DataFrame:
         """Return every row of a table, with ``status`` and ``reason``."""

@@ -36,6 +36,8 @@ def gathered(parts: Iterable[pd.DataFrame], limit: int = 20, severities: Iterabl
     [[2, 'n/a (in 30 rows: 2-31)']]
     """
     table = findings.together(parts)
+    if len(table) <= limit:
+        return table
     same = ["file", "sheet", "heading", "check", "action", "severity", "advice"]
     keys = table[[*same, "found"]].fillna("")
     varied = (keys.groupby(same)["found"].transform("nunique") > limit) & (limit > 1)

@@ -121,10 +121,24 @@ def read(cells: pd.Series, column: Column, factor: float = 1.0) -> pd.DataFrame:
     [[2.0, '<', 'number'], [nan, '', 'no result'], [5.0, '', 'number']]
     """
     codes, uniques = pd.factorize(cells)
-    entries = _read_texts(pd.Series(uniques, dtype="string"), column, factor)
+    texts = pd.Series(uniques, dtype="string")
+    entries = _plain_numbers(texts) if _are_plain(texts) else _read_texts(texts, column, factor)
     blank = pd.DataFrame({"value": [np.nan], "bound": [""], "kind": [""]})
     every = pd.concat([entries, blank], ignore_index=True)  # code -1 is a missing cell: the last row
     return every.take(np.where(codes < 0, len(every) - 1, codes)).set_axis(cells.index)
+
+
+def _are_plain(texts: pd.Series) -> bool:
+    """Return whether every text is digits with or without a point, and none a code: the usual column."""
+    if not bool(texts.str.fullmatch(r"\d+(?:\.\d+)?").all()):
+        return False
+    return not bool(texts.astype(float).isin(POSSIBLE_CODES).any())
+
+
+def _plain_numbers(texts: pd.Series) -> pd.DataFrame:
+    return pd.DataFrame({"value": texts.astype(float), "bound": "", "kind": "number"}).astype(
+        {"bound": object, "kind": object}
+    )
 
 
 def _read_texts(texts: pd.Series, column: Column, factor: float) -> pd.DataFrame:

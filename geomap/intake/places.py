@@ -153,7 +153,7 @@ class _Seat:
             swapped_away=np.abs(numbers("swapped_away_m")),
             ambiguous=flags("ambiguous"),
             past_end=flags("past_end"),
-            degrees=small & outside & ~origin,
+            degrees=small & (away > half_width_m) & ~origin,
             origin=origin,
             half_width=half_width_m,
         )

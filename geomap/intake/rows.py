@@ -223,6 +223,8 @@ def _follow(intake: Intake, table: str, lost: Flags, check: Check, reason: str) 
     """Leave out rows because of another table; one note for each boring or sample."""
     entries = intake[table]
     fresh = lost & entries.used
+    if not fresh.any():
+        return intake
     # Points from a column of the samples table follow their row and are not said again.
     said = fresh & entries.rows.get("in_layout", pd.Series(True, entries.rows.index)).to_numpy(dtype=bool)
     notes = gathered([entries.findings_of(check, said, "boring")], limit=1, severities=EVERY_SEVERITY)

@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 from geomap.intake import damage, numbers, words
 from geomap.intake.entries import USED, Entries, Flags, Intake, Texts
 from geomap.intake.gathering import gathered
-from geomap.tables import findings, schema
+from geomap.tables import schema
 from geomap.tables.findings import Check
 from geomap.tables.raw import Heading, RawTable
 from geomap.tables.schema import Column
@@ -61,7 +61,7 @@ def accept(tables: Iterable[RawTable]) -> Intake:
         before = taken.get(raw.layout)
         taken[raw.layout] = entries if before is None else _one_after_other(before, entries)
         parts += [raw.findings, found]
-    return Intake(taken, findings.together(parts))
+    return Intake(taken, tuple(part for part in parts if len(part)))
 
 
 def _accept_one(raw: RawTable) -> tuple[Entries, pd.DataFrame]:

@@ -6,6 +6,7 @@ over steps that share a word.
 
 from __future__ import annotations
 
+import re
 from typing import Any
 
 import pyproj
@@ -35,6 +36,7 @@ SYSTEM_TITLES = {
 # Classes of the probability of unsuitable soil, upper bound in percent and color. The bounds at 10 and 50 are
 # those at which the suitability word turns. Dark is bad; lightness alone carries the order.
 RAMP = ((10, "#f4efe6"), (25, "#e8c9b5"), (50, "#cf8f8d"), (75, "#96506a"), (101, "#4a1d3c"))
+_AUTHORITY_CODE = re.compile(r"[A-Za-z]+:\d+")
 IMPORTED = ("#dfe2d8", "d__d")
 
 
@@ -161,10 +163,12 @@ def _ramp_item(number: int) -> dict[str, Any]:
 
 
 def _crs_name(code: str) -> str:
-    """Return the name behind an authority code, with the code; any other text as it is."""
+    """Return the name behind an authority code, with the code, or the name in a WKT; any other text as it is."""
+    is_code = _AUTHORITY_CODE.fullmatch(code) is not None
+    if not is_code and "[" not in code:
+        return code
     try:
-        crs = pyproj.CRS.from_user_input(code)
+        name = str(pyproj.CRS.from_user_input(code).name)
     except CRSError:
         return code
-    known = crs.to_authority(min_confidence=100)
-    return f"{crs.name} ({':'.join(known)})" if known else str(crs.name)
+    return f"{name} ({code})" if is_code else name

@@ -22,7 +22,8 @@ FINE_PER_COARSE = 5
 COARSE_MARGIN, FINE_MARGIN = 2.0, 0.25  # how far the grid reaches beyond the line, in sides of its box
 GRID_POINTS = 7  # vertices of one grid line: a straight line of the projection is a curve in degrees
 
-Degrees = Callable[[NDArray[np.float64], NDArray[np.float64]], tuple[NDArray[np.float64], NDArray[np.float64]]]
+Floats = NDArray[np.float64]
+Degrees = Callable[[Floats, Floats], tuple[Floats, Floats]]
 
 
 def plan(results: Results) -> dict[str, Any]:
@@ -75,10 +76,16 @@ def degrees_from_projected(crs: str) -> tuple[Degrees, bool, str]:
             f"Latitude and longitude are approximate, to {size}: the datum grid for {source.name} is not "
             "installed where this page was made. Chainages, offsets and levels are not affected."
         )
-    return transformer.transform, False, note
+
+    def to_degrees(x: Floats, y: Floats) -> tuple[Floats, Floats]:
+        # Lists, because pyproj takes an array of one for a number and warns of it.
+        lon, lat = transformer.transform(x.tolist(), y.tolist())
+        return np.array(lon), np.array(lat)
+
+    return to_degrees, False, note
 
 
-def line_points(results: Results) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]:
+def line_points(results: Results) -> tuple[Floats, Floats, Floats]:
     """Return distance, x and y of every vertex of the alignment and every step boundary, in order of distance."""
     alignment = results.tables["alignment"].iloc[0]
     line = shapely.force_2d(alignment["geometry"])
@@ -93,7 +100,7 @@ def line_points(results: Results) -> tuple[NDArray[np.float64], NDArray[np.float
     return at, points[:, 0], points[:, 1]
 
 
-def grid(bounds: NDArray[np.float64], to_degrees: Degrees, digits: int) -> list[dict[str, Any]]:
+def grid(bounds: Floats, to_degrees: Degrees, digits: int) -> list[dict[str, Any]]:
     """Return lines of equal easting and northing: a coarse set far around `bounds`, a finer one near them."""
     left, bottom, right, top = (float(b) for b in bounds)
     side = max(right - left, top - bottom)
@@ -116,7 +123,7 @@ def grid(bounds: NDArray[np.float64], to_degrees: Degrees, digits: int) -> list[
     return lines
 
 
-def _grid_line(axis: int, value: float, along: NDArray[np.float64], to_degrees: Degrees, digits: int) -> dict[str, Any]:
+def _grid_line(axis: int, value: float, along: Floats, to_degrees: Degrees, digits: int) -> dict[str, Any]:
     fixed = np.full(len(along), value)
     lon, lat = to_degrees(fixed, along) if axis == 0 else to_degrees(along, fixed)
     return {

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
+from operator import itemgetter
 from typing import Any
 
 import numpy as np
@@ -17,7 +18,7 @@ from geomap.results import Results
 SUITABILITY = ("suitable", "treat", "unsuitable", "not assessed")
 EVIDENCE = ("observed", "inferred", "no data")
 MATERIAL = ("natural", "mixed", "imported")
-LEAST_SHARE = 0.005  # the odds name every symbol from here on
+LEAST_SHARE = 0.005  # up to here a share rounds to no percent
 TRACE_ROWS = 12  # samples named for one step; the page says how many more there are and their weight
 
 
@@ -25,7 +26,7 @@ def symbols_present(results: Results, system: str) -> list[str]:
     """Return the symbols of `system` that occur in cells, steps or samples, in the order of the legend."""
     tables = results.tables
     cells = tables["profile_cells"]
-    found = {str(symbol) for text in _odds_texts(cells, system).dropna().unique() for symbol in json.loads(text)}
+    found = {symbol for row in _read_odds(_odds_texts(cells, system).dropna().unique()) for symbol in row}
     columns = [tables["samples"].get(SYMBOL_COLUMN[system], pd.Series(dtype="string"))]
     if system == first_system(results):
         columns += [cells["soil_group"], tables["subgrade"]["soil_group"]]
@@ -99,8 +100,10 @@ def odds(texts: pd.Series, symbols: Sequence[str]) -> list[str]:
     """
     codes, unique = pd.factorize(texts)
     place = dict(zip(symbols, ALPHABET, strict=False))
-    rows = (json.loads(text).items() for text in unique)
-    pairs = [sorted((pair for pair in row if pair[1] > LEAST_SHARE), key=lambda pair: -pair[1]) for row in rows]
+    pairs = [
+        sorted([pair for pair in row.items() if pair[1] > LEAST_SHARE], key=itemgetter(1), reverse=True)
+        for row in _read_odds(unique)
+    ]
     packed = percents([share for row in pairs for _, share in row])  # all at once: there are tens of thousands
     at = 0
     short: list[str] = [""]
@@ -151,6 +154,12 @@ def trace(results: Results) -> dict[str, Any]:
         "more": rest.size().reindex(order, fill_value=0).tolist(),
         "rest": numbers(rest.sum().reindex(order, fill_value=0.0) * 1000, 0),
     }
+
+
+def _read_odds(texts: Iterable[str]) -> list[dict[str, float]]:
+    """Return the odds of many texts, read in one go: one call for each would take most of the page's time."""
+    rows: list[dict[str, float]] = json.loads(f"[{','.join(texts)}]")
+    return rows
 
 
 def _odds_texts(table: pd.DataFrame, system: str) -> pd.Series:

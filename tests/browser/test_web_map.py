@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -19,6 +20,7 @@ pytestmark = pytest.mark.browser
 
 Open = Callable[..., Opened]
 LENGTH_M = STEPS * STEP_M
+GLOBALS = "Object.keys(window).sort().join()"
 HOSTILE = {
     "template": "{{7*7}}",
     "script": "</script><script>alert(1)</script>",
@@ -45,6 +47,17 @@ def large(written: Write) -> Path:
 @pytest.fixture
 def page(open_page: Open, small: Path) -> Opened:
     return open_page(small)
+
+
+@pytest.fixture(scope="module")
+def benign_globals(chromium: Any, small: Path) -> str:
+    """The names that the browser's global object has with a harmless page."""
+    page = chromium.new_page()
+    page.goto(small.as_uri())
+    page.wait_for_selector("html[data-ready]", state="attached")
+    names: str = page.evaluate(GLOBALS)
+    page.close()
+    return names
 
 
 def boring_pixel(page: Opened, distance: float) -> float:
@@ -324,10 +337,10 @@ def test_without_a_formation_the_page_shows_groups_by_depth(open_page: Open, wri
 
 
 @pytest.mark.parametrize("kind", HOSTILE)
-def test_hostile_names_are_shown_and_do_nothing(open_page: Open, written: Write, small: Path, kind: str) -> None:
+def test_hostile_names_are_shown_and_do_nothing(
+    open_page: Open, written: Write, benign_globals: str, kind: str
+) -> None:
     name = HOSTILE[kind]
-    globals_of = "Object.keys(window).sort().join()"
-    benign = open_page(small).page.evaluate(globals_of)
     page = open_page(written(sample_results(name=name, first=name)))
     page.press("PageDown")
     page.point(0.3)
@@ -337,7 +350,7 @@ def test_hostile_names_are_shown_and_do_nothing(open_page: Open, written: Write,
     assert page.dialogs == []
     assert page.requests == []
     assert page.complaints == []
-    assert page.page.evaluate(globals_of) == benign
+    assert page.page.evaluate(GLOBALS) == benign_globals
     assert page.page.evaluate("document.documentElement.scrollWidth") <= 1440
     header, plan = page.box(".title-block"), page.box(".plan")
     assert header["height"] < 200

@@ -82,12 +82,17 @@ function makePlan(map, layers, data, colors, chainage, place) {
     return L.circleMarker(point, { ...style, interactive: false }).addTo(layers.borings);
   });
 
-  // Where borings would cover the line at a small scale they shrink.
+  // Where borings would cover the line at a small scale they shrink, and at last go: the names stay.
   function sizeBorings() {
     const metersPerPixel = map.distance(map.containerPointToLatLng([0, 100]), map.containerPointToLatLng([100, 100])) / 100;
     const crowd = (data.length / Math.max(borings.length, 1)) / metersPerPixel;
-    const radius = crowd < 7 ? 2 : crowd < 16 ? 3.5 : 5;
-    marks.forEach((mark, i) => mark && mark.setRadius(i === place.boring() ? 8 : radius));
+    const radius = crowd < 3 ? 0 : crowd < 7 ? 2 : crowd < 16 ? 3.5 : 5;
+    marks.forEach((mark, i) => {
+      if (!mark) return;
+      const isOpen = i === place.boring();
+      mark.setRadius(isOpen ? 8 : radius);
+      mark.setStyle({ stroke: isOpen || radius > 0 });
+    });
   }
 
   const cursor = L.marker(points[0], {

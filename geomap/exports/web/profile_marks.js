@@ -77,15 +77,20 @@ function makeProfileMarks(context, data, scale, colors, chainage, lengths, cellP
     holes.forEach((hole, i) => {
       const gap = Math.min(hole.x - (holes[i - 1]?.x ?? -1e9), (holes[i + 1]?.x ?? 1e9) - hole.x);
       const room = (holes[i + 1]?.x ?? 1e9) - hole.x;
-      hole.width = gap > 60 ? 11 : gap > 24 ? 8 : gap > 10 ? 5 : 3;
+      hole.width = gap > 60 ? 11 : gap > 24 ? 8 : gap > 10 ? 5 : gap > 4.5 ? 3 : 0;
       hole.lettersFit = room > 60 && hole.x + 50 < scale.right;
     });
     return holes;
   }
 
+  // Holes that stand shoulder to shoulder would hide the ground: only a tick above it says where each is.
   function boringColumns(open) {
     const holes = fittedBorings();
-    holes.forEach((hole) => boringColumn(hole, hole.number === open));
+    for (const hole of holes) {
+      const isOpen = hole.number === open;
+      if (hole.width || isOpen) boringColumn({ ...hole, width: hole.width || 5 }, isOpen);
+      else tick(hole.x, scale.y(scale.boringTop(hole.number)) - 5, hole.x, scale.y(scale.boringTop(hole.number)));
+    }
     return holes;
   }
 
@@ -146,6 +151,7 @@ function makeProfileMarks(context, data, scale, colors, chainage, lengths, cellP
     const sorted = visibleBorings().sort((a, b) => (b.number === open) - (a.number === open) || a.x - b.x);
     placed = [];
     for (const { number, x } of sorted) {
+      if (placed.some((other) => Math.abs(other.x - x) < 9)) continue; // two leaders so close read as one
       const text = shortened(borings.name[number], 14);
       const half = context.measureText(text).width / 2 + 4;
       const middle = Math.min(Math.max(x, scale.left + half - 4), scale.right - half + 4);

@@ -171,7 +171,7 @@ class Estimation(_Section):
     realizations: int = Field(200, ge=20, le=10_000, description="number of draws")
     seed: int = Field(1, ge=0, description="the same seed gives the same draws")
     horizontal_range_m: float | None = Field(
-        None, gt=0, description="range along the line; absent: a stated default", examples=[200.0]
+        None, gt=0, description="range along the line; absent: a stated default", examples=[300.0]
     )
     vertical_range_m: float | None = Field(
         None, gt=0, description="range in depth; absent: a stated default", examples=[2.0]

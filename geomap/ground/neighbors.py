@@ -26,7 +26,7 @@ Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
 # Fixed defaults. Practical range: the distance at which the correlation falls to 0.05.
-HORIZONTAL_RANGE_M = 200.0  # common practice, no source
+HORIZONTAL_RANGE_M = 300.0  # common practice, no source
 VERTICAL_RANGE_M = 2.0  # common practice, no source
 NUGGET = 0.1  # share of the variance between samples side by side; common practice, no source
 BACKGROUND_DEPTH_M = 1.0  # half width of the depth window of samples in the background; our choice

@@ -74,7 +74,7 @@ def check(intake: Intake, classified: pd.DataFrame, records: pd.DataFrame) -> In
     """
     samples = intake["samples"]
     every = samples.rows.index
-    symbol = classified["uscs_symbol"].where(classified["uscs_symbol_basis"] == "lab").reindex(every)
+    symbol = classified["uscs_symbol"].astype("string").where(classified["uscs_symbol_basis"] == "lab").reindex(every)
     parts = [*_field(samples, symbol), *_tests(samples, records.reindex(every))]
     return intake.having(samples, *parts)
 
@@ -191,7 +191,7 @@ def _groups(words: str) -> frozenset[str]:
 
 def _disagree(symbol: pd.Series, field: pd.Series) -> Flags:
     """Return True where both are known and do not go together; each different pair is judged once."""
-    pairs = pd.DataFrame({"symbol": symbol.astype(object), "field": field.astype(object)}).dropna()
-    number, unique = pd.factorize(pd.MultiIndex.from_frame(pairs))
-    apart = np.array([not agree(str(a), str(b)) for a, b in unique], dtype=bool)
+    pairs = (symbol.astype("string") + "\n" + field.astype("string")).dropna()
+    number, unique = pd.factorize(pairs)
+    apart = np.array([not agree(*str(pair).split("\n", maxsplit=1)) for pair in unique], dtype=bool)
     return pd.Series(apart[number], pairs.index).reindex(symbol.index, fill_value=False).to_numpy(dtype=bool)

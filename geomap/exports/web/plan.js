@@ -95,6 +95,9 @@ function makePlan(map, layers, data, colors, chainage, place) {
     });
   }
 
+  const metric = data.corridor.unit.name === "m";
+  L.control.scale({ metric, imperial: !metric, maxWidth: 130 }).addTo(map);
+
   const cursor = L.marker(points[0], {
     icon: L.divIcon({ className: "plan-cursor", iconSize: [22, 22] }),
     interactive: false,

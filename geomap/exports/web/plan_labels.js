@@ -2,7 +2,7 @@
 // would touch another is not drawn; it appears when there is room, after zooming in.
 
 const LABEL_LIMIT = 120;
-const PEG_PIXELS = 110;
+const PEG_PIXELS = 84;
 
 function makePlanLabels(map, { data, chainage, pointAt, borings, place, runs }) {
   const group = L.layerGroup().addTo(map);

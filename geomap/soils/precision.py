@@ -3,12 +3,15 @@
 ``near_limit`` is true where, everything else kept,
 
 (a) the class from unrounded results differs from the class from results in whole numbers, or
-(b) the class differs when one result alone is moved by half its reporting unit, up or down: 0.5 for a percent
-    passing, a liquid limit, a plastic limit or a plasticity index (reported in whole percent: ASTM D6913 Method A,
-    D4318, from memory), 2 % of its value for Cu and Cc (project rule; they have no reporting unit). The class of
-    the moved results is taken both in whole numbers and unrounded; either counts.
+(b) the class differs when one result alone is moved by half its reporting unit, up or down. That is 0.5 for a percent
+    passing, a liquid limit, a plastic limit or a plasticity index, for they are reported in whole percent (ASTM D6913
+    Method A, D4318, from memory); and 2 % of its value for Cu and Cc, which have no reporting unit (project rule).
+    D10, D30 and D60 that come from a curve are also moved, one at a time, to the sizes that half a percent less and
+    half a percent more is finer than: as far as they can go when one sieve result moves.
+    The class of moved results is taken in whole numbers and unrounded; either counts, and so does losing the class.
 
-A class that the data do not decide, or that was given by eye, has no ``near_limit``.
+So a sieve result that is replaced by one with more digits, which rounds to it, changes no class unless ``near_limit``
+said so. A class that the data do not decide, or that was given by eye, has no ``near_limit``.
 """
 
 from __future__ import annotations
@@ -36,23 +39,37 @@ class Move:
 
     Attributes
     ----------
-    names
-        The record columns that move together.
+    name
+        The record column that is moved; records where it is missing are not tried.
     is_near
         Records whose class could differ; the others are not tried.
-    share
-        Move by this share of the value; 0 for half a percent.
+    variants
+        Yields the columns with the result moved, up and down.
     """
 
-    names: tuple[str, ...]
+    name: str
     is_near: Flags
-    share: float = 0.0
+    variants: Callable[[Arrays], Iterator[Arrays]]
 
-    def both_ways(self, columns: Arrays) -> Iterator[Arrays]:
-        """Yield the columns with this result moved up, and moved down."""
-        for sign in (1.0, -1.0):
-            factor, step = (1.0 + sign * self.share, 0.0) if self.share else (1.0, sign * HALF_UNIT)
-            yield {**columns, **{name: columns[name] * factor + step for name in self.names}}
+
+def half_unit(name: str, is_near: Flags) -> Move:
+    """Return the move of a result by half a percent."""
+
+    def variants(columns: Arrays) -> Iterator[Arrays]:
+        for step in (HALF_UNIT, -HALF_UNIT):
+            yield {**columns, name: columns[name] + step}
+
+    return Move(name, is_near, variants)
+
+
+def small_share(names: tuple[str, ...], is_near: Flags) -> Move:
+    """Return the move of a ratio, and of its bounds with it, by 2 % of its value."""
+
+    def variants(columns: Arrays) -> Iterator[Arrays]:
+        for factor in (1.0 + RATIO_SHARE, 1.0 - RATIO_SHARE):
+            yield {**columns, **{name: columns[name] * factor for name in names}}
+
+    return Move(names[0], is_near, variants)
 
 
 def is_close(values: Floats, limits: Iterable[float], within: float) -> Flags:
@@ -66,10 +83,9 @@ def is_close(values: Floats, limits: Iterable[float], within: float) -> Flags:
     return np.asarray(np.logical_or.reduce([np.abs(values - limit) <= within for limit in limits]))
 
 
-def limit_moves(is_near: Flags, oven_dried: Flags | None = None) -> list[Move]:
+def limit_moves(is_near: Flags) -> list[Move]:
     """Return the moves of the liquid limit, the plastic limit and the plasticity index."""
-    moves = [Move((name,), is_near) for name in LIMITS]
-    return moves if oven_dried is None else [*moves, Move(("liquid_limit_oven_dried_pct",), oven_dried)]
+    return [half_unit(name, is_near) for name in LIMITS]
 
 
 def near_limit(
@@ -97,11 +113,11 @@ def near_limit(
     subset, wanted = taken(columns, rows), codes[rows]
     differs = judge(subset, other) != wanted
     for move in moves:
-        at = np.flatnonzero(move.is_near[rows] & ~differs & ~np.isnan(subset[move.names[0]]))
+        at = np.flatnonzero(move.is_near[rows] & ~differs & ~np.isnan(subset[move.name]))
         if not len(at):
             continue
         part = taken(subset, at)
-        for moved in move.both_ways(part):
+        for moved in move.variants(part):
             differs[at] |= (judge(moved, whole) != wanted[at]) | (judge(moved, as_given) != wanted[at])
     result[rows] = differs
     return result

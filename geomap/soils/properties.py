@@ -14,14 +14,15 @@ from numpy.typing import NDArray
 
 from geomap.soils import gradation, specimens, wording
 from geomap.soils.gradation import BOUNDED, INTERPOLATED, MEASURED, Curves, Hows, Sizes
+from geomap.soils.precision import HALF_UNIT
 from geomap.soils.records import LIMITS, Arrays, Flags, Floats, arrays, taken
 from geomap.soils.sieve_table import SieveTable
 from geomap.soils.systems.astm_d2487 import SYMBOLS
 from geomap.tables import schema
 
 NAMED_MM = (4.75, 2.0, 0.425, 0.075, 0.05, 0.002)  # limits of ASTM D2487, AASHTO M 145 and USDA
-D_SIZES = ("d10_mm", "d30_mm", "d60_mm")
-REPORTED = (*D_SIZES, "cu", "cc")
+D_TARGETS = {"d10_mm": 10.0, "d30_mm": 30.0, "d60_mm": 60.0}
+REPORTED = (*D_TARGETS, "cu", "cc")
 TESTED = (*REPORTED, *LIMITS, "liquid_limit_oven_dried_pct", "organic_pct", "cobbles_pct", "boulders_pct")
 SILT_BY_EYE, CLAY_BY_EYE = 1, 2
 GREATEST_CLEAN = 12.5  # percent fines that still round to 12 (ASTM D2487-17, Table 1)
@@ -77,8 +78,11 @@ def _of_specimens(samples: pd.DataFrame, place: NDArray[np.int64], count: int) -
     table = samples[names].iloc[first].reset_index(drop=True)
     is_joined = np.bincount(place, minlength=count)[place] > 1
     if is_joined.any():
-        joined = samples.loc[is_joined, names].groupby(place[is_joined]).first()
-        table.loc[joined.index] = joined
+        joined = samples.loc[is_joined, names].groupby(place[is_joined])
+        values = joined.first()
+        if "is_nonplastic" in names:
+            values["is_nonplastic"] = joined["is_nonplastic"].max()
+        table.loc[values.index] = values
     return table
 
 
@@ -193,13 +197,11 @@ def shape(columns: Arrays, curves: Curves | SieveTable, over: Floats) -> Arrays:
     -----
     ``Cu = D60 / D10``, ``Cc = D30^2 / (D10 D60)`` (ASTM D2487-17, section 3). Bounds follow from those of the D
     sizes: a size finer than the curve lies between 0 and its finest size, a coarser one between its coarsest and 75 mm.
-    Without any curve or D size they are NaN.
+    Without any curve or D size they are NaN. ``d10_low_mm, d10_high_mm`` and so on are the sizes that half a percent
+    less and half a percent more is finer than, for `geomap.soils.precision`; where anything is reported, the D size.
     """
     scale = np.where(np.isnan(over), 1.0, over / 100.0) if (over < 100.0).any() else 1.0
-    found = [
-        _with_reported(curves.size(target * scale), columns[name])
-        for name, target in zip(D_SIZES, (10.0, 30.0, 60.0), strict=True)
-    ]
+    found = [_with_reported(curves.size(target * scale), columns[name]) for name, target in D_TARGETS.items()]
     d10, d30, d60 = found
     with np.errstate(divide="ignore", invalid="ignore"):
         cu_bounds = d60.low_mm / d10.high_mm, d60.high_mm / d10.low_mm
@@ -210,8 +212,13 @@ def shape(columns: Arrays, curves: Curves | SieveTable, over: Floats) -> Arrays:
         cu = _reported_or(columns["cu"], d60.size_mm / d10.size_mm)
         cc = _reported_or(columns["cc"], d30.size_mm**2 / (d10.size_mm * d60.size_mm))
     is_bare = curves.is_empty & np.logical_and.reduce([np.isnan(size.size_mm) for size in found])
-    result: Arrays = {name: size.size_mm for name, size in zip(D_SIZES, found, strict=True)}
+    result: Arrays = {name: size.size_mm for name, size in zip(D_TARGETS, found, strict=True)}
     result |= {"cu": cu, "cc": cc}
+    is_reported = ~np.logical_and.reduce([np.isnan(columns[name]) for name in REPORTED])
+    for name, target in D_TARGETS.items():
+        for end, step in (("low", -HALF_UNIT), ("high", HALF_UNIT)):
+            moved = curves.size((target + step) * scale).size_mm
+            result[name.replace("_mm", f"_{end}_mm")] = np.where(is_reported, result[name], moved)
     for name, value, bounds in (("cu", cu, cu_bounds), ("cc", cc, cc_bounds)):
         for end, bound in zip(("low", "high"), bounds, strict=True):
             known = np.where(is_bare, np.nan, np.maximum(bound, 1.0 if name == "cu" else 0.0))

@@ -77,7 +77,15 @@ def blocks(rows: int) -> Iterator[slice]:
 
 def taken(columns: Arrays, rows: NDArray[Any] | slice) -> Arrays:
     """Return the rows asked for of every column."""
-    return {name: values[rows] for name, values in columns.items()}
+    result: Arrays = {}
+    same: NDArray[Any] | None = None  # columns that are one value throughout, as absent ones are, need no copy
+    for name, values in columns.items():
+        if values.strides != (0,) or not len(values):
+            result[name] = values[rows]
+            continue
+        same = np.empty(len(values), dtype=np.bool_)[rows] if same is None else same
+        result[name] = np.broadcast_to(values[0], len(same))
+    return result
 
 
 def whole(values: Floats) -> Floats:

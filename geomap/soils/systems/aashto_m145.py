@@ -21,7 +21,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from geomap.soils import precision, reasons, wording
 from geomap.soils.plasticity import GREATEST_LIMIT, limits
-from geomap.soils.precision import Move, is_close
+from geomap.soils.precision import Move, half_unit, is_close
 from geomap.soils.reasons import BIT, Bits
 from geomap.soils.records import LIMITS, Arrays, Flags, Floats, Reading, arrays, as_given, blocks, taken, whole
 from geomap.soils.systems import aashto_m145_rules as rules
@@ -129,7 +129,7 @@ def classify(records: pd.DataFrame, *, with_reasons: bool = True) -> pd.DataFram
         Columns of ``NEEDS``; an absent one was not tested.
     with_reasons
         Add ``aashto_group_reason`` (why there is no group, or what was assumed) and ``aashto_group_candidates``
-        (the groups left, where there are several and at least one is ruled out).
+        (the groups left, where there are several).
 
     Returns
     -------
@@ -247,12 +247,15 @@ def _moves(columns: Arrays) -> list[Move]:
     ll, pl, pi = (columns[name] for name in LIMITS)
     pi = np.where(np.isnan(pl), pi, ll - pl)
     is_granular = p200 < 36.0
-    on_table = is_close(ll, [rules.LIQUID_LIMIT_STEP], 1.5) | is_close(pi, rules.INDEX_STEPS, 2.0)
-    on_table |= np.abs(pi - ll + rules.A_7_5_BELOW_LL) <= 2.0
+    # How far rounding and a move of half a unit can carry a limit, an index or their difference: 1, 1.5 and 1.5.
+    on_table = is_close(ll, [rules.LIQUID_LIMIT_STEP], 1.1)
+    for step, least_fines in zip(rules.INDEX_STEPS, (11.1, 26.1, np.inf), strict=True):
+        on_table |= is_close(pi, [step], 1.6) & (p200 < least_fines)
+    on_table |= (np.abs(pi - ll + rules.A_7_5_BELOW_LL) <= 1.6) & (p200 > 34.0) & (ll > 39.0)
     return [
-        Move(("passing_2_mm_pct",), is_granular & is_close(p10, rules.NO_10_STEPS, 1.0)),
-        Move(("passing_0_425_mm_pct",), is_granular & is_close(p40, rules.NO_40_STEPS, 1.0)),
-        Move(("passing_0_075_mm_pct",), is_close(p200, rules.NO_200_STEPS, 1.0)),
+        half_unit("passing_2_mm_pct", is_granular & is_close(p10, rules.NO_10_STEPS, 1.0)),
+        half_unit("passing_0_425_mm_pct", is_granular & is_close(p40, rules.NO_40_STEPS, 1.0)),
+        half_unit("passing_0_075_mm_pct", is_close(p200, rules.NO_200_STEPS, 1.0)),
         *precision.limit_moves(on_table),
     ]
 

@@ -11,7 +11,8 @@ ASTM D2487-17, *Standard Practice for Classification of Soils for Engineering Pu
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import functools
+from collections.abc import Iterator, Mapping
 from types import MappingProxyType
 from typing import Any
 
@@ -19,10 +20,10 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-from geomap.soils import precision, reasons, wording
-from geomap.soils.precision import Move, is_close
+from geomap.soils import plasticity, precision, reasons, wording
+from geomap.soils.precision import Move, half_unit, is_close, small_share
 from geomap.soils.reasons import BIT, Bits
-from geomap.soils.records import LIMITS, Arrays, Reading, arrays, blocks, taken, whole
+from geomap.soils.records import LIMITS, Arrays, Flags, Reading, arrays, blocks, taken, whole
 from geomap.soils.systems import astm_d2487_names as names
 from geomap.soils.systems import astm_d2487_rules as rules
 from geomap.soils.systems.astm_d2487_rules import Sets
@@ -36,8 +37,9 @@ SYMBOLS = rules.SYMBOLS
 
 GRADATION = (
     *("passing_4_75_mm_pct", "passing_2_mm_pct", "passing_0_425_mm_pct", "passing_0_075_mm_pct"),
-    *("cu_low", "cu_high", "cc_low", "cc_high", "d30_mm", "d60_mm"),
+    *("cu_low", "cu_high", "cc_low", "cc_high", "d10_mm", "d30_mm", "d60_mm"),
 )
+D_SIZE_ENDS = tuple(f"{name}_{end}_mm" for name in ("d10", "d30", "d60") for end in ("low", "high"))
 NEEDS = (
     *(*GRADATION, *LIMITS, "liquid_limit_oven_dried_pct"),
     *("is_nonplastic", "is_peat", "fines_by_eye", "visual_code"),
@@ -112,7 +114,7 @@ def classify(records: pd.DataFrame, *, with_reasons: bool = True) -> pd.DataFram
         Columns of ``NEEDS``, and ``cobbles_pct`` and ``boulders_pct`` for the name; an absent one was not tested.
     with_reasons
         Add ``uscs_symbol_reason`` (why there is no symbol or name, or what was assumed) and
-        ``uscs_symbol_candidates`` (the symbols left, where there are several and at least one is ruled out).
+        ``uscs_symbol_candidates`` (the symbols left, where there are several).
 
     Returns
     -------
@@ -124,7 +126,7 @@ def classify(records: pd.DataFrame, *, with_reasons: bool = True) -> pd.DataFram
     Laboratory tests govern. A record that its tests do not decide stays blank even where the visual group is one of
     the candidates; a record without any tests takes its visual group, without a name.
     """
-    columns = read(records)
+    columns = read(records) | arrays(records, D_SIZE_ENDS)
     found = rules.sets_of_all(columns)
     tested = rules.tables()[1][found.place]
     tested[columns["is_peat"]] = 0
@@ -217,15 +219,49 @@ def _moves(columns: Arrays) -> list[Move]:
     pi = np.where(np.isnan(columns["plastic_limit_pct"]), pi, ll - columns["plastic_limit_pct"])
     is_coarse = p200 < 51.0
     half = is_coarse & (np.abs(100.0 - 2.0 * p4 + p200) <= 4.0)
-    on_chart = is_close(ll, [50], 1.5) | is_close(pi, [4, 7], 2.0) | (np.abs(pi - 0.73 * (ll - 20.0)) <= 3.0)
-    by_drying = np.abs(oven - 0.75 * ll) <= 2.0
+    # How far rounding and a move of half a unit can carry a limit, an index, or the height above the A-line: 1, 1.5
+    # and 1.4 (a move of the liquid limit nearly follows the line).
+    height = pi - plasticity.A_LINE_SLOPE * (ll - plasticity.A_LINE_FOOT_LL)
+    on_chart = (is_close(ll, [rules.HIGH_PLASTICITY], 1.1) & (p200 >= 49.0)) | (np.abs(height) <= 1.5)
+    on_chart |= is_close(pi, [rules.HATCHED_FROM_PI, rules.HATCHED_TO_PI], 1.6) & (height >= -1.5)
+    by_drying = np.abs(oven - plasticity.ORGANIC_RATIO * ll) <= 2.0
     by_limits = (p200 >= 4.0) & (on_chart | by_drying)
     by_shape = (p200 < 13.5) & ~np.isnan(p200)
+    bounds = (("cu_low", "cu_high"), cu, [4, 6], 0.2), (("cc_low", "cc_high"), cc, [1, 3], 0.1)
     return [
-        Move(("passing_4_75_mm_pct",), half),
-        Move(("passing_0_075_mm_pct",), half | is_close(p200, [5, 12, 50], 1.0)),
-        *(Move((name,), is_coarse & np.isnan(p4)) for name in ("passing_2_mm_pct", "passing_0_425_mm_pct")),
-        *precision.limit_moves(by_limits, by_limits & by_drying),
-        Move(("cu_low", "cu_high"), by_shape & is_close(cu, [4, 6], 0.2), precision.RATIO_SHARE),
-        Move(("cc_low", "cc_high"), by_shape & is_close(cc, [1, 3], 0.1), precision.RATIO_SHARE),
+        half_unit("passing_4_75_mm_pct", half),
+        half_unit("passing_0_075_mm_pct", half | is_close(p200, [5, 12, 50], 1.0)),
+        *(half_unit(name, is_coarse & np.isnan(p4)) for name in ("passing_2_mm_pct", "passing_0_425_mm_pct")),
+        *precision.limit_moves(by_limits),
+        half_unit("liquid_limit_oven_dried_pct", by_limits & by_drying),
+        *(small_share(names, by_shape & is_close(value, limits, near)) for names, value, limits, near in bounds),
+        *_d_size_moves(columns, by_shape),
     ]
+
+
+def _d_size_moves(columns: Arrays, by_shape: Flags) -> Iterator[Move]:
+    """Yield the moves of D10, D30 and D60 along the curve, where they change what the grading term can be."""
+    rows = np.flatnonzero(by_shape)
+    part = taken({name: columns[name] for name in (*rules.SHAPE, "d10_mm", *D_SIZE_ENDS)}, rows)
+    before = [rules.terms(part, least_cu) for least_cu in (rules.GRAVEL_LEAST_CU, rules.SAND_LEAST_CU)]
+    for name in ("d10", "d30", "d60"):
+        for end in ("low", "high"):
+            moved = _with_d_size(part, name, end)
+            after = [rules.terms(moved, least_cu) for least_cu in (rules.GRAVEL_LEAST_CU, rules.SAND_LEAST_CU)]
+            is_near = np.zeros(len(by_shape), dtype=bool)
+            is_near[rows] = (before[0] != after[0]) | (before[1] != after[1])
+            yield Move(f"{name}_mm", is_near, functools.partial(_one_d_size, name=name, end=end))
+
+
+def _one_d_size(columns: Arrays, name: str, end: str) -> Iterator[Arrays]:
+    yield _with_d_size(columns, name, end)
+
+
+def _with_d_size(columns: Arrays, name: str, end: str) -> Arrays:
+    """Return the columns with one D size at its low or high end, and Cu and Cc to match; NaN where it is outside."""
+    size = columns[f"{name}_{end}_mm"]
+    share = size / columns[f"{name}_mm"]
+    by_cu, by_cc = {"d10": (1 / share, 1 / share), "d30": (1.0, share**2), "d60": (share, 1 / share)}[name]
+    moved = {f"cu_{bound}": columns[f"cu_{bound}"] * by_cu for bound in ("low", "high")}
+    moved |= {f"cc_{bound}": columns[f"cc_{bound}"] * by_cc for bound in ("low", "high")}
+    return {**columns, **moved, f"{name}_mm": size}

@@ -189,17 +189,26 @@ def _grading(columns: Arrays, band: Small, low: Floats, high: Floats, p200: Floa
     rows = np.flatnonzero(band <= DUAL)
     if len(rows):
         shape = taken({name: columns[name] for name in SHAPE}, rows)
-        gravel[rows] = _terms(shape, GRAVEL_LEAST_CU)
-        sand[rows] = _terms(shape, SAND_LEAST_CU) << 2
+        gravel[rows] = terms(shape, GRAVEL_LEAST_CU)
+        sand[rows] = terms(shape, SAND_LEAST_CU) << 2
     return np.asarray(gravel * is_gravel | sand * is_sand)
 
 
 SHAPE = ("cu_low", "cu_high", "cc_low", "cc_high", "d30_mm", "d60_mm")
 
 
-def _terms(shape: Arrays, least_cu: float) -> Small:
-    """Return which grading terms stay possible: 1 well graded, 2 poorly graded.
+def terms(shape: Arrays, least_cu: float) -> Small:
+    """Return which grading terms stay possible, as bits: 1 well graded, 2 poorly graded.
 
+    Parameters
+    ----------
+    shape
+        The columns of `SHAPE`.
+    least_cu
+        4 for gravel, 6 for sand.
+
+    Notes
+    -----
     Where Cu is not known but D30 and D60 are, Cu and Cc are tied: ``Cc = Cu (D30 / D60)^2``, so a curve that is
     steep between D30 and D60 can be shown to fail one or the other whatever D10 is.
     """

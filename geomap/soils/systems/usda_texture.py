@@ -21,7 +21,7 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from geomap.soils import precision, reasons, wording
-from geomap.soils.precision import Move
+from geomap.soils.precision import half_unit
 from geomap.soils.records import Arrays, Floats, Reading, arrays, as_given, blocks, taken, whole
 
 NAME = "usda_texture"
@@ -200,7 +200,7 @@ def classify(records: pd.DataFrame, *, with_reasons: bool = True) -> pd.DataFram
         table["usda_texture_reason"] = reasons.column(bits)
         table["usda_texture_candidates"] = wording.candidates(masks, SYMBOLS)
     everywhere = np.ones(len(code), dtype=bool)
-    moves = [Move((SIEVES[place],), everywhere) for place in (1, 4, 5)]
+    moves = [half_unit(SIEVES[place], everywhere) for place in (1, 4, 5)]
     is_near = precision.near_limit(columns, code, moves, _judge, other=whole)
     table["usda_texture_near_limit"] = precision.flags(is_near, code > 0)
     return table

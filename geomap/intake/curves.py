@@ -40,7 +40,7 @@ WITH_CURVE = Check(
     "left out with its curve",
     "reject",
     "percent passing that falls with the size",
-    "settle the finding about the curve",
+    "left out as its curve is; settle the finding about the curve",
     "note",
 )
 SMALL_RISE = Check(

@@ -58,7 +58,7 @@ def as_points(intake: Intake) -> Intake:
     samples = intake["samples"]
     wide = _melted(samples)
     names = schema.passing_columns(samples.rows.columns)
-    points = _joined(long, wide)
+    points = _joined(dataclasses.replace(long, headings={**samples.headings, **long.headings}), wide)
     samples = dataclasses.replace(samples, rows=samples.rows.drop(columns=names))
     return _each_size_once(intake.having(samples).having(points, *parts))
 

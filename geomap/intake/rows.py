@@ -52,10 +52,18 @@ REPEATED_SAMPLE = Check(
     "both rows are used; give one of them another name, so that lab sheets can be told apart",
 )
 WITH_BORING = Check(
-    "left out with its boring", "reject", "a boring that is used", "settle the findings about the boring", "note"
+    "left out with its boring",
+    "reject",
+    "a boring that is used",
+    "left out as its boring is; settle the findings about the boring",
+    "note",
 )
 WITH_SAMPLE = Check(
-    "left out with its sample", "reject", "a sample that is used", "settle the findings about the sample", "note"
+    "left out with its sample",
+    "reject",
+    "a sample that is used",
+    "left out as its sample is; settle the findings about the sample",
+    "note",
 )
 
 

@@ -151,3 +151,11 @@ def test_samples_without_gradations_leave_an_empty_table_of_points() -> None:
     assert taken.used("gradations").empty
     assert taken.used("gradations")["sample_row"].dtype == "int64"
     assert pd.api.types.is_float_dtype(taken.used("gradations")["passing_pct"])
+
+
+def test_rows_left_out_with_their_curve_or_sample_are_listed_by_name() -> None:
+    taken = long("BH-1 | S1 | 4.75 | 90", "BH-1 | S1 | 0.425 | 40", "BH-1 | S1 | 0.075 | 55")
+    said = asked(taken, "left out with its curve").iloc[0]
+    assert (said["heading"], said["found"]) == ("boring, sample", "boring BH-1, sample S1 (in 2 rows: 2-3)")
+    lost = long("BH-1 | S1 | 0.425 | 90", "BH-1 | S1 | 0.075 | 55", samples=WIDE + "\nBH-1 | S1 | 9 | | |")
+    assert asked(lost, "left out with its sample")["found"].tolist() == ["BH-1 (in 2 rows: 2-3)"]

@@ -171,8 +171,11 @@ function makePlan(map, layers, data, colors, chainage, place) {
     } else delete node.dataset.distance;
     marks.forEach((mark, i) => mark && mark.setStyle(i === state.boring ? { fillColor: "#c4006a" } : { fillColor: "#ffffff" }));
     sizeBorings();
+    if (state.boring !== named) relabel();
+    named = state.boring;
   });
 
+  let named = null;
   let mode = colors.modes.group;
   const relabel = oncePerFrame(() => {
     sizeBorings();

@@ -100,17 +100,13 @@ function makePlanLabels(map, { data, chainage, pointAt, borings, place, runs }) 
     }
   }
 
-  function names() {
+  function names(order) {
     const view = map.getBounds();
-    const order = borings.map((_, i) => i);
-    const open = place.boring();
-    if (open !== null) order.unshift(open); // the open boring is named before all others
-    const named = new Set();
     for (const i of order) {
-      if (named.has(i) || !borings[i] || !view.contains(borings[i])) continue;
+      if (!borings[i] || !view.contains(borings[i])) continue;
       const kind = data.borings.used[i] === 1 ? "boring" : "boring left-out";
       const text = shortened(data.borings.name[i], 16);
-      if ([[10, 10], [10, -10], [-10, 10], [-10, -10], [14, 0], [-14, 0], [0, 19], [0, -19]].some(([dx, dy]) => put(borings[i], dx, dy, text, kind, `11px ${FONT}`))) named.add(i);
+      [[10, 10], [10, -10], [-10, 10], [-10, -10], [14, 0], [-14, 0], [0, 19], [0, -19]].some(([dx, dy]) => put(borings[i], dx, dy, text, kind, `11px ${FONT}`));
     }
   }
 
@@ -166,9 +162,12 @@ function makePlanLabels(map, { data, chainage, pointAt, borings, place, runs }) 
       const size = map.getSize();
       taken.push([size.x - 56, 0, size.x, 120], [0, size.y - 50, 170, size.y], [size.x - 170, size.y - 40, size.x, size.y]);
       occupyLine();
+      // The open boring is named before anything else; then what every reader needs first.
+      const open = place.boring();
+      if (open !== null) names([open]);
       pegs();
       letters(mode);
-      names();
+      names(borings.map((_, i) => i).filter((i) => i !== open));
       drawFrame();
     },
   };

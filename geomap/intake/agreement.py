@@ -53,6 +53,8 @@ HIGH_LIQUID_LIMIT = 50.0  # LL of 50 parts low from high (ASTM D2487)
 
 _NOUNS = "gravel|sand|silt|clay|peat"
 _ASIDE = r"\b(?:with|traces? of|trace|some|little|few|occasional|containing|including)\b[^.;:]*"
+_AFTER_SYMBOL = r"(?s)^([^:;]*\([A-Z]{2}(?:[-/][A-Z]{2})?\)):.*"  # "Lean clay (CL): 90 % fines, 10 % sand"
+_ORGANIC_SOIL = r"(?i)\borganic soil\b"  # the group name of OL and OH in ASTM D2488, from memory
 _STREAK = rf"\b(?:{_NOUNS})y?\s+(?:lens|lenses|seams?|layers?|partings?|pockets?|bands?|laminae|lumps?)\b"
 _MAIN = r"^(?P<before>.*?)\b(?P<noun>{nouns})s?\b(?:\s*(?:/|&|and|or)\s*(?P<second>{nouns})s?\b)?"
 _CLEAN = frozenset({"GW", "GP", "SW", "SP"})  # up to 12 % fines (ASTM D2487)
@@ -117,16 +119,20 @@ def main_soil(descriptions: pd.Series) -> pd.Series:
     """Return what each description calls the soil: qualifier and main noun; two nouns joined by ``and`` both count.
 
     Parts after with, some, trace and the like are not the main soil. A noun in capitals, as on many logs, is
-    preferred to others.
+    preferred to others. Of a group name with its symbol, what follows the colon is left out.
 
     Examples
     --------
     >>> texts = ["Brown clayey fine SAND with gravel", "Firm grey silty CLAY", "sand and gravel", "Topsoil", None]
     >>> main_soil(pd.Series(texts, dtype="string")).tolist()
     ['clayey sand', 'silty clay', 'sand/gravel', <NA>, <NA>]
+    >>> main_soil(pd.Series(["Organic soil (OH): 95 % fines, 5 % sand"], dtype="string")).tolist()
+    ['organic clay']
     """
     codes, uniques = pd.factorize(descriptions)
-    texts = pd.Series(uniques, dtype=object).str.replace(rf"(?i){_ASIDE}|{_STREAK}", " ", regex=True)
+    texts = pd.Series(uniques, dtype=object).str.replace(_AFTER_SYMBOL, r"\1", regex=True)
+    texts = texts.str.replace(_ORGANIC_SOIL, "organic clay", regex=True)
+    texts = texts.str.replace(rf"(?i){_ASIDE}|{_STREAK}", " ", regex=True)
     found = texts.str.lower().str.extract(_MAIN.format(nouns=_NOUNS))
     capitals = texts.str.extract(f"(?s){_MAIN.format(nouns=_NOUNS.upper()).replace('s?', 'S?')}")
     mixed = (texts != texts.str.upper()) & capitals["noun"].notna()

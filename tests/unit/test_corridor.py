@@ -118,7 +118,8 @@ def test_the_template_names_every_key_and_is_a_corridor_file(tmp_path: Path) -> 
     for section, field in Corridor.model_fields.items():
         if section != "path":
             assert f"[{section}]" in text
-            assert field.description and field.description in text
+            assert field.description
+            assert field.description in text
     parsed = tomllib.loads(
         "\n".join(line.removeprefix("# ") for line in text.splitlines() if "=" in line or "[" in line)
     )

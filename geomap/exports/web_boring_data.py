@@ -98,7 +98,7 @@ def findings(results: Results) -> dict[str, Any]:
     table = results.tables["findings"]
     rank = table["severity"].map({"error": 0, "warning": 1, "note": 2}).fillna(3)
     table = table.iloc[rank.argsort(kind="stable")]
-    texts = ("severity", "action", "check", "heading", "boring", "sample", "found", "allowed", "advice")
+    texts = ("severity", "action", "topic", "heading", "boring", "sample", "found", "allowed", "advice")
     return {name: words(table[name]) for name in texts} | _source(table)
 
 

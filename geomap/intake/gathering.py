@@ -38,7 +38,7 @@ def gathered(parts: Iterable[pd.DataFrame], limit: int = 20, severities: Iterabl
     table = findings.together(parts)
     if len(table) <= limit:
         return table
-    same = ["file", "sheet", "heading", "check", "action", "severity", "advice"]
+    same = ["file", "sheet", "heading", "topic", "action", "severity", "advice"]
     keys = table[[*same, "found"]].fillna("")
     varied = (keys.groupby(same)["found"].transform("nunique") > limit) & (limit > 1)
     number = keys.assign(found=keys["found"].mask(varied, "")).groupby([*same, "found"], sort=False).ngroup()

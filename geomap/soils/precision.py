@@ -8,7 +8,8 @@
     Method A, D4318, from memory); and 2 % of its value for Cu and Cc, which have no reporting unit (project rule).
     D10, D30 and D60 that come from a curve are also moved, one at a time, to the sizes that half a percent less and
     half a percent more is finer than: as far as they can go when one sieve result moves.
-    The class of moved results is taken in whole numbers and unrounded; either counts, and so does losing the class.
+    The class of moved results is taken in whole numbers and unrounded; either counts, and so does losing the class. No
+    result is moved so far that it contradicts another one: a finer sieve never passes more than a coarser one.
 
 So a sieve result that is replaced by one with more digits, which rounds to it, changes no class unless ``near_limit``
 said so. A class that the data do not decide, or that was given by eye, has no ``near_limit``.
@@ -52,14 +53,36 @@ class Move:
     variants: Callable[[Arrays], Iterator[Arrays]]
 
 
+SIEVES = ("passing_0_002_mm_pct", "passing_0_05_mm_pct", "passing_0_075_mm_pct", "passing_0_425_mm_pct")
+SIEVES += ("passing_2_mm_pct", "passing_4_75_mm_pct")
+
+
 def half_unit(name: str, is_near: Flags) -> Move:
-    """Return the move of a result by half a percent."""
+    """Return the move of a result by half a percent, no farther than the results beside it allow."""
 
     def variants(columns: Arrays) -> Iterator[Arrays]:
-        for step in (HALF_UNIT, -HALF_UNIT):
-            yield {**columns, name: columns[name] + step}
+        value = columns[name]
+        least, most = _room(name, columns)
+        yield {**columns, name: np.fmin(value + HALF_UNIT, np.fmax(most, value))}
+        yield {**columns, name: np.fmax(value - HALF_UNIT, np.fmin(least, value))}
 
     return Move(name, is_near, variants)
+
+
+def _room(name: str, columns: Arrays) -> tuple[Floats, Floats]:
+    """Return what a result cannot fall below or exceed: a finer sieve passes no more, an index is within its limit."""
+    least, most = np.zeros(len(columns[name])), np.full(len(columns[name]), np.inf)
+    if name in SIEVES:
+        place = SIEVES.index(name)
+        least = np.fmax.reduce([least, *(columns[sieve] for sieve in SIEVES[:place] if sieve in columns)])
+        most = np.fmin.reduce([most, *(columns[sieve] for sieve in SIEVES[place + 1 :] if sieve in columns)])
+        return least, np.fmin(most, 100.0)
+    ll, pl, pi = LIMITS
+    if name == ll:
+        least = np.where(np.isnan(columns[pl]), np.fmax(columns[pi], least), least)
+    if name == pi:
+        most = np.where(np.isnan(columns[pl]), np.fmin(columns[ll], most), most)
+    return least, most
 
 
 def small_share(names: tuple[str, ...], is_near: Flags) -> Move:

@@ -23,13 +23,13 @@ PHRASES: Mapping[str, str] = MappingProxyType(
         # No tests at all, or a class by eye.
         "untested": "no usable laboratory tests and no visual group: test the gradation and the limits",
         "untested, no visual": "no usable laboratory tests: test the gradation and the limits",
-        "not a symbol": "no usable laboratory tests, and the visual group is not one symbol of ASTM D2487: write one symbol, "
-        "or test the gradation and the limits",
+        "not a symbol": "no usable laboratory tests, and the visual group is not one symbol of ASTM D2487: write one "
+        "symbol, or test the gradation and the limits",
         "visual": "no usable laboratory tests: the symbol is the visual group",
         "peat": "highly organic by the visual group, or by the organic content set for the project",
         # Gradation.
-        "no fines": "percent passing 0.075 mm (No. 200) is neither measured nor between two sizes of a usable curve, so "
-        "no class is allowed: wash and sieve over 0.075 mm (ASTM D1140, D6913)",
+        "no fines": "percent passing 0.075 mm (No. 200) is neither measured nor between two sizes of a usable curve, "
+        "so no class is allowed: wash and sieve over 0.075 mm (ASTM D1140, D6913)",
         "sieves disagree": "a finer sieve passes more than a coarser one: check the lab sheet",
         "no 4.75 mm": "percent passing 4.75 mm (No. 4) is missing, so gravel or sand is open: report that sieve",
         "no 2 mm": "percent passing 2 mm (No. 10) is missing, so group A-1-a is open: report that sieve",

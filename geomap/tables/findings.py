@@ -54,7 +54,7 @@ class Check:
                 frame[name] = rows[name]
         frame["heading"] = _picked(heading, picked)
         frame["found"] = _picked(found, picked)
-        frame["check"] = self.name
+        frame["topic"] = self.name
         frame["allowed"] = self.allowed
         frame["action"] = self.action
         frame["severity"] = self.severity or SEVERITY_OF_ACTION[self.action]

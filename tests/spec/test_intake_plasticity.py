@@ -64,14 +64,14 @@ def test_limits(written: tuple[str, ...], used: tuple[float | None, ...], nonpla
     limits = ("liquid_limit_pct", "plastic_limit_pct", "plasticity_index_pct")
     assert tuple(None if pd.isna(row[c]) else row[c] for c in limits) == used
     assert (not pd.isna(row["is_nonplastic"]) and bool(row["is_nonplastic"])) == nonplastic
-    assert taken.findings["check"].tolist() == ([asked] if asked else [])
+    assert taken.findings["topic"].tolist() == ([asked] if asked else [])
 
 
 def test_two_zeros_make_a_rejected_liquid_and_plasticity_index_beside_a_plastic_limit() -> None:
     headings = "boring | top_depth_m | LL:liquid_limit_pct | PL:plastic_limit_pct | PI:plasticity_index_pct"
     text = f"{headings}\nBH-1 | 1 | 0 | 20 | 0"
     taken = screen(accept([raw("samples", text)]))
-    assert taken.findings["check"].tolist() == ["limit of zero", "limit of zero"]
+    assert taken.findings["topic"].tolist() == ["limit of zero", "limit of zero"]
     assert taken.findings["heading"].tolist() == ["LL", "PI"]
 
 
@@ -79,7 +79,7 @@ def test_np_against_a_no_in_the_column_for_it_is_asked_about() -> None:
     text = "boring | top_depth_m | LL:liquid_limit_pct | NP:is_nonplastic\nBH-1 | 1 | NP | no\nBH-1 | 2 | NP | yes"
     taken = screen(accept([raw("samples", text)]))
     assert taken.used("samples")["is_nonplastic"].tolist() == [True, True]
-    assert taken.findings[["check", "row_number"]].values.tolist() == [["NP against yes or no", 2]]
+    assert taken.findings[["topic", "row_number"]].values.tolist() == [["NP against yes or no", 2]]
 
 
 def test_an_oven_dried_liquid_limit_above_the_other_is_asked_about() -> None:
@@ -89,6 +89,6 @@ def test_an_oven_dried_liquid_limit_above_the_other_is_asked_about() -> None:
     BH-1   | 2           | 60                  | 40
     """
     taken = screen(accept([raw("samples", text)]))
-    assert taken.findings[["check", "row_number", "found"]].values.tolist() == [
+    assert taken.findings[["topic", "row_number", "found"]].values.tolist() == [
         ["oven-dried liquid limit above the liquid limit", 2, "oven 66, LL 60"]
     ]

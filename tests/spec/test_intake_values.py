@@ -99,7 +99,7 @@ def made_of(column: str, text: str, layout: str = "samples") -> tuple[str | None
     value = (
         None if pd.isna(row[column]) else (f"{row[column]:g}" if isinstance(row[column], float) else str(row[column]))
     )
-    asked = taken.findings["check"].tolist() or ["-"]
+    asked = taken.findings["topic"].tolist() or ["-"]
     assert len(asked) == 1
     if asked != ["-"]:
         assert taken.findings.loc[0, "found"].startswith(text.strip())

@@ -13,7 +13,7 @@ function makeFindings(data) {
   const tag = (i) => element("span", { class: `severity ${severities.includes(findings.severity[i]) ? findings.severity[i] : "note"}` }, findings.severity[i] || "note");
 
   function line(i) {
-    return element("li", null, tag(i), " ", isolated((findings.check[i] || "").replaceAll("_", " ")), ": found ", isolated(findings.found[i] || "nothing"), "; ", isolated(findings.advice[i] || ""), element("div", { class: "source" }, isolated(where(i))));
+    return element("li", null, tag(i), " ", isolated((findings.topic[i] || "").replaceAll("_", " ")), ": found ", isolated(findings.found[i] || "nothing"), "; ", isolated(findings.advice[i] || ""), element("div", { class: "source" }, isolated(where(i))));
   }
 
   function row(i) {

@@ -153,7 +153,7 @@ def classify(records: pd.DataFrame, *, with_reasons: bool = True) -> pd.DataFram
         {
             "aashto_group": wording.categories(code, SYMBOLS),
             "group_index": pd.arrays.IntegerArray(np.where(no_index, 0, index).astype(np.int64), no_index),
-            "aashto_group_basis": wording.categories((code > 0) + (columns["is_peat"] & (code > 0)), BASES),
+            "aashto_group_basis": wording.categories(np.where(columns["is_peat"], 2, code > 0), BASES),
         },
         index=records.index,
     )

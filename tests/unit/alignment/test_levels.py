@@ -48,7 +48,7 @@ def test_rows_out_of_order_are_sorted_and_asked_about() -> None:
     )
     np.testing.assert_array_equal(levels.distance, [0, 20, 50, 60])
     np.testing.assert_array_equal(levels.level, [1, 3, 2, 4])
-    assert findings["check"].tolist() == ["levels: order"]
+    assert findings["topic"].tolist() == ["levels: order"]
     assert findings["row_number"].tolist() == [4]
 
 

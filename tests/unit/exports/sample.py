@@ -321,7 +321,7 @@ def findings_table(first: str) -> pd.DataFrame:
             "heading": ["moisture_pct", "passing_0_075_mm_pct", "x"],
             "boring": ["BH-2", "BH-3", "BH-4"],
             "sample": ["S1", "S3", None],
-            "check": ["moisture_high", "fines_missing", "far_from_line"],
+            "topic": ["moisture_high", "fines_missing", "far_from_line"],
             "found": ["210", "", "118 m"],
             "allowed": ["usually 0 to 100", "a number", "75 m or nearer"],
             "action": ["query", "query", "reject"],

@@ -312,7 +312,7 @@ def large_results(size: Size | None = None, name: str = "Stand Heath link") -> R
             "heading": "liquid_limit_pct",
             "boring": np.resize(borings["boring"].to_numpy(object), 24),
             "sample": "S2",
-            "check": "plastic_above_liquid",
+            "topic": "plastic_above_liquid",
             "found": "LL 31, PL 34",
             "allowed": "PL not above LL",
             "action": np.resize(["query", "convert", "reject"], 24),

@@ -51,7 +51,7 @@ def test_most_borings_far_from_the_line_block() -> None:
     taken = placed("A | 100 | 90000 | 5 | 6", "B | 200 | 90000 | 5 | 6", "C | 300 | 1 | 5 | 6")
     said = taken.blocks.iloc[0]
     assert len(taken.blocks) == 1
-    assert said["check"] == "coordinates far from the line"
+    assert said["topic"] == "coordinates far from the line"
     assert said["found"] == "2 of 3 more than 500 m from the line (first: x 100, y 90000)"
 
 
@@ -84,7 +84,7 @@ def test_a_table_with_most_coordinates_swapped_blocks_and_says_so() -> None:
 # Defect 3: latitude and longitude in meter columns.
 def test_degrees_in_columns_of_meters_block() -> None:
     taken = placed("A | -3.51 | 54.81 | 5 | 6", "B | -3.52 | 54.82 | 5 | 6", "C | -3.53 | 54.83 | 5 | 6")
-    assert taken.blocks["check"].tolist() == ["longitude and latitude as coordinates"]
+    assert taken.blocks["topic"].tolist() == ["longitude and latitude as coordinates"]
 
 
 def test_one_boring_in_degrees_is_left_out_alone() -> None:

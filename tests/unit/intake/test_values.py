@@ -119,9 +119,9 @@ def test_sheets_of_one_layout_follow_each_other_and_findings_name_the_right_one(
 
 def test_findings_of_the_reader_stand_before_those_on_its_values() -> None:
     table = raw("samples", "boring | ph\nBH-1 | 20")
-    before = pd.DataFrame({"file": ["samples.csv"], "check": ["heading not known"], "found": ["Weather"]})
+    before = pd.DataFrame({"file": ["samples.csv"], "topic": ["heading not known"], "found": ["Weather"]})
     taken = accept([dataclasses.replace(table, findings=before)])
-    assert taken.findings["check"].tolist() == ["heading not known", "out of range"]
+    assert taken.findings["topic"].tolist() == ["heading not known", "out of range"]
 
 
 def test_the_input_is_left_as_it_was() -> None:

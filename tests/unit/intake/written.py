@@ -84,7 +84,7 @@ def dirty(**texts: str) -> list[RawTable]:
 
 def asked(intake: Intake, check: str) -> pd.DataFrame:
     """Return the findings of one check, and make sure that there are some and that they are complete."""
-    found = intake.findings.loc[intake.findings["check"] == check]
+    found = intake.findings.loc[intake.findings["topic"] == check]
     assert len(found), f"no finding {check!r} among {sorted(set(intake.findings['check']))}"
     for column in ("file", "heading", "found", "allowed", "action", "severity", "advice"):
         assert (found[column].fillna("") != "").all(), column
@@ -93,4 +93,4 @@ def asked(intake: Intake, check: str) -> pd.DataFrame:
 
 def checks(intake: Intake) -> set[str]:
     """Return the names of the checks that asked."""
-    return set(intake.findings["check"])
+    return set(intake.findings["topic"])

@@ -38,4 +38,4 @@ def checks(table: RawTable | RawLine) -> dict[str, str]:
     """Return the action of each check that has a finding."""
     if not len(table.findings):
         return {}
-    return dict(zip(table.findings["check"], table.findings["action"], strict=True))
+    return dict(zip(table.findings["topic"], table.findings["action"], strict=True))

@@ -130,7 +130,7 @@ def test_vertices_are_read_from_a_workbook(tmp_path: Path) -> None:
 def test_a_vertex_that_repeats_the_one_before_is_left_out_with_its_row(tmp_path: Path) -> None:
     line = read_line(text_file(tmp_path, "x,y\n0,0\n0,0.0\n10,0\n0,0\n"))
     assert line.vertices.tolist() == [[0, 0], [10, 0], [0, 0]]
-    assert line.findings[["check", "row_number"]].values.tolist() == [["vertex twice", 3]]
+    assert line.findings[["topic", "row_number"]].values.tolist() == [["vertex twice", 3]]
 
 
 @pytest.mark.parametrize("cell", ["", "abc", "nan", "inf"])

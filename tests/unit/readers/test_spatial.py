@@ -112,7 +112,7 @@ def test_the_geometry_goes_before_coordinates_in_columns(tmp_path: Path) -> None
     table = read(path, "borings")
     assert cells(table)["x"] == ["500000.25", "500100"]
     assert table.unrecognized == ("Easting", "lat")
-    assert table.findings[["check", "heading"]].values.tolist() == [
+    assert table.findings[["topic", "heading"]].values.tolist() == [
         ["coordinates twice", "Easting"],
         ["coordinates twice", "lat"],
     ]

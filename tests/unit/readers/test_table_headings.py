@@ -25,7 +25,7 @@ def test_headings_are_found_beneath_a_title_block_and_row_numbers_are_those_of_a
         "liquid_limit_pct": ["35", "40"],
     }
     note = table.findings.iloc[0]
-    assert (note["check"], note["row_number"], note["found"]) == ("rows above the headings", 1, "Soils laboratory")
+    assert (note["topic"], note["row_number"], note["found"]) == ("rows above the headings", 1, "Soils laboratory")
 
 
 def test_the_row_with_all_required_headings_goes_before_one_with_more(tmp_path: Path) -> None:
@@ -51,7 +51,7 @@ def test_a_units_row_gives_the_units_and_is_no_sample(tmp_path: Path) -> None:
     assert table.headings["top_depth_m"] == Heading("top depth", "top_depth_m", 0.3048, "ft")
     assert table.headings["unconfined_kpa"].unit == "psf"
     row = table.findings.iloc[0]
-    assert (row["check"], row["row_number"]) == ("units row", 2)
+    assert (row["topic"], row["row_number"]) == ("units row", 2)
 
 
 def test_a_row_of_dashes_is_no_units_row(tmp_path: Path) -> None:
@@ -80,7 +80,7 @@ def test_the_corridors_length_unit_counts_only_where_the_file_states_none(tmp_pa
     assert table.headings["top_depth_m"].factor == 1200 / 3937
     assert table.headings["base_depth_m"].factor == 1.0
     assert table.headings["d10_mm"].factor == 1.0
-    assert table.findings[["check", "heading", "action"]].values.tolist() == [["length unit", "top depth", "convert"]]
+    assert table.findings[["topic", "heading", "action"]].values.tolist() == [["length unit", "top depth", "convert"]]
     assert read(path).headings["top_depth_m"].factor == 1.0
     assert not len(read(path).findings)
 
@@ -181,7 +181,7 @@ def test_headings_that_mean_nothing_are_kept_and_listed(tmp_path: Path) -> None:
 
 def test_a_sieve_by_number_without_a_sign_is_noted(tmp_path: Path) -> None:
     table = read(text_file(tmp_path, "boring,top,P10,P200,No. 40\nBH1,1,2,3,4\n"))
-    assert table.findings[["check", "heading"]].values.tolist() == [["sieve number", "P10"]]
+    assert table.findings[["topic", "heading"]].values.tolist() == [["sieve number", "P10"]]
 
 
 def test_originals_keep_every_cell_as_found(tmp_path: Path) -> None:

@@ -129,7 +129,7 @@ def test_a_formula_that_was_never_calculated_is_not_a_blank(tmp_path: Path) -> N
     table = read(workbook(tmp_path, Lab=rows))
     assert cells(table)["liquid_limit_pct"] == ["=20+15", "30", "=C2"]
     finding = table.findings.iloc[0]
-    assert (finding["check"], finding["row_number"]) == ("formula without a value", 2)
+    assert (finding["topic"], finding["row_number"]) == ("formula without a value", 2)
     assert finding["found"].startswith("2 formulas")
 
 

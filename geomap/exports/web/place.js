@@ -34,9 +34,11 @@ function makePlace(data) {
       preview = null;
       tell(source);
     },
+    // Whoever asks for a place wants its stretch: an open boring card would stand above it.
     hold(distance, depth, source) {
       held = { distance: inside(distance), depth };
       preview = null;
+      boring = null;
       tell(source);
     },
     openBoring(number, source) {

@@ -6,8 +6,8 @@
 (b) the class differs when one result alone is moved by half its reporting unit, up or down. That is 0.5 for a percent
     passing, a liquid limit, a plastic limit or a plasticity index, for they are reported in whole percent (ASTM D6913
     Method A, D4318, from memory); and 2 % of its value for Cu and Cc, which have no reporting unit (project rule).
-    D10, D30 and D60 that come from a curve are also moved, one at a time, to the sizes that half a percent less and
-    half a percent more is finer than: as far as they can go when one sieve result moves.
+    Where they come from a curve, they also take every value that D10, D30 and D60 allow between the sizes that half a
+    percent less and half a percent more is finer than: no sieve result that moves by as much can carry them farther.
     The class of moved results is taken in whole numbers and unrounded; either counts, and so does losing the class. No
     result is moved so far that it contradicts another one: a finer sieve never passes more than a coarser one.
 
@@ -53,8 +53,10 @@ class Move:
     variants: Callable[[Arrays], Iterator[Arrays]]
 
 
-SIEVES = ("passing_0_002_mm_pct", "passing_0_05_mm_pct", "passing_0_075_mm_pct", "passing_0_425_mm_pct")
-SIEVES += ("passing_2_mm_pct", "passing_4_75_mm_pct")
+SIEVES = (
+    *("passing_0_002_mm_pct", "passing_0_05_mm_pct", "passing_0_075_mm_pct"),
+    *("passing_0_425_mm_pct", "passing_2_mm_pct", "passing_4_75_mm_pct"),
+)
 
 
 def half_unit(name: str, is_near: Flags) -> Move:

@@ -11,8 +11,7 @@ ASTM D2487-17, *Standard Practice for Classification of Soils for Engineering Pu
 
 from __future__ import annotations
 
-import functools
-from collections.abc import Iterator, Mapping
+from collections.abc import Mapping
 from types import MappingProxyType
 from typing import Any
 
@@ -37,9 +36,10 @@ SYMBOLS = rules.SYMBOLS
 
 GRADATION = (
     *("passing_4_75_mm_pct", "passing_2_mm_pct", "passing_0_425_mm_pct", "passing_0_075_mm_pct"),
-    *("cu_low", "cu_high", "cc_low", "cc_high", "d10_mm", "d30_mm", "d60_mm"),
+    *("cu_low", "cu_high", "cc_low", "cc_high", "d30_mm", "d60_mm"),
 )
-D_SIZE_ENDS = tuple(f"{name}_{end}_mm" for name in ("d10", "d30", "d60") for end in ("low", "high"))
+D_SIZES = ("d10_mm", "d30_mm", "d60_mm")
+D_SIZE_ENDS = tuple(name.replace("_mm", f"_{end}_mm") for name in D_SIZES for end in ("low", "high"))
 NEEDS = (
     *(*GRADATION, *LIMITS, "liquid_limit_oven_dried_pct"),
     *("is_nonplastic", "is_peat", "fines_by_eye", "visual_code"),
@@ -88,6 +88,10 @@ def read(records: Mapping[str, NDArray[Any]] | pd.DataFrame) -> Arrays:
         for bound in (f"{name}_low", f"{name}_high"):
             if bound not in records and name in records:
                 columns[bound] = arrays(records, [name])[name]
+    if "d30_mm" in records and "d60_mm" in records:
+        columns["tie_low"] = columns["tie_high"] = (columns["d60_mm"] / columns["d30_mm"]) ** 2
+    else:
+        columns["tie_low"] = columns["tie_high"] = columns["d30_mm"] * np.nan
     return columns
 
 
@@ -126,7 +130,7 @@ def classify(records: pd.DataFrame, *, with_reasons: bool = True) -> pd.DataFram
     Laboratory tests govern. A record that its tests do not decide stays blank even where the visual group is one of
     the candidates; a record without any tests takes its visual group, without a name.
     """
-    columns = read(records) | arrays(records, D_SIZE_ENDS)
+    columns = read(records) | arrays(records, ("d10_mm", *D_SIZE_ENDS))
     found = rules.sets_of_all(columns)
     tested = rules.tables()[1][found.place]
     tested[columns["is_peat"]] = 0
@@ -235,33 +239,36 @@ def _moves(columns: Arrays) -> list[Move]:
         *precision.limit_moves(by_limits),
         half_unit("liquid_limit_oven_dried_pct", by_limits & by_drying),
         *(small_share(names, by_shape & is_close(value, limits, near)) for names, value, limits, near in bounds),
-        *_d_size_moves(columns, by_shape),
+        _along_the_curve(columns, by_shape),
     ]
 
 
-def _d_size_moves(columns: Arrays, by_shape: Flags) -> Iterator[Move]:
-    """Yield the moves of D10, D30 and D60 along the curve, where they change what the grading term can be."""
+def _along_the_curve(columns: Arrays, by_shape: Flags) -> Move:
+    """Return the move of D10, D30 and D60 between their ends, where it changes what the grading term can be."""
     rows = np.flatnonzero(by_shape)
-    part = taken({name: columns[name] for name in (*rules.SHAPE, "d10_mm", *D_SIZE_ENDS)}, rows)
-    before = [rules.terms(part, least_cu) for least_cu in (rules.GRAVEL_LEAST_CU, rules.SAND_LEAST_CU)]
-    for name in ("d10", "d30", "d60"):
-        for end in ("low", "high"):
-            moved = _with_d_size(part, name, end)
-            after = [rules.terms(moved, least_cu) for least_cu in (rules.GRAVEL_LEAST_CU, rules.SAND_LEAST_CU)]
-            is_near = np.zeros(len(by_shape), dtype=bool)
-            is_near[rows] = (before[0] != after[0]) | (before[1] != after[1])
-            yield Move(f"{name}_mm", is_near, functools.partial(_one_d_size, name=name, end=end))
+    part = taken({name: columns[name] for name in (*rules.SHAPE, *D_SIZES, *D_SIZE_ENDS)}, rows)
+    moved = _with_d_sizes_open(part)
+    is_near = np.zeros(len(by_shape), dtype=bool)
+    for least_cu in (rules.GRAVEL_LEAST_CU, rules.SAND_LEAST_CU):
+        is_near[rows] |= rules.terms(part, least_cu) != rules.terms(moved, least_cu)
+    return Move("cu_low", is_near, lambda columns: iter([_with_d_sizes_open(columns)]))
 
 
-def _one_d_size(columns: Arrays, name: str, end: str) -> Iterator[Arrays]:
-    yield _with_d_size(columns, name, end)
-
-
-def _with_d_size(columns: Arrays, name: str, end: str) -> Arrays:
-    """Return the columns with one D size at its low or high end, and Cu and Cc to match; NaN where it is outside."""
-    size = columns[f"{name}_{end}_mm"]
-    share = size / columns[f"{name}_mm"]
-    by_cu, by_cc = {"d10": (1 / share, 1 / share), "d30": (1.0, share**2), "d60": (share, 1 / share)}[name]
-    moved = {f"cu_{bound}": columns[f"cu_{bound}"] * by_cu for bound in ("low", "high")}
-    moved |= {f"cc_{bound}": columns[f"cc_{bound}"] * by_cc for bound in ("low", "high")}
-    return {**columns, **moved, f"{name}_mm": size}
+def _with_d_sizes_open(columns: Arrays) -> Arrays:
+    """Return the columns with Cu and Cc bounded by all that D10, D30 and D60 can be between their ends."""
+    share = {}
+    for name in D_SIZES:
+        size, at = columns[name], name.removesuffix("_mm")
+        for end, outside in (("low", 0.0), ("high", np.inf)):
+            found = columns[f"{at}_{end}_mm"] / size
+            share[at, end] = np.where(np.isnan(size), 1.0, np.where(np.isnan(found), outside, found))
+    with np.errstate(divide="ignore", invalid="ignore"):
+        moved = {
+            "cu_low": share["d60", "low"] / share["d10", "high"],
+            "cu_high": share["d60", "high"] / share["d10", "low"],
+            "cc_low": share["d30", "low"] ** 2 / (share["d10", "high"] * share["d60", "high"]),
+            "cc_high": share["d30", "high"] ** 2 / (share["d10", "low"] * share["d60", "low"]),
+            "tie_low": (share["d60", "low"] / share["d30", "high"]) ** 2,
+            "tie_high": (share["d60", "high"] / share["d30", "low"]) ** 2,
+        }
+        return {**columns, **{name: columns[name] * factor for name, factor in moved.items()}}

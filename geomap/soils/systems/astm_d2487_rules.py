@@ -194,7 +194,7 @@ def _grading(columns: Arrays, band: Small, low: Floats, high: Floats, p200: Floa
     return np.asarray(gravel * is_gravel | sand * is_sand)
 
 
-SHAPE = ("cu_low", "cu_high", "cc_low", "cc_high", "d30_mm", "d60_mm")
+SHAPE = ("cu_low", "cu_high", "cc_low", "cc_high", "tie_low", "tie_high")
 
 
 def terms(shape: Arrays, least_cu: float) -> Small:
@@ -203,27 +203,27 @@ def terms(shape: Arrays, least_cu: float) -> Small:
     Parameters
     ----------
     shape
-        The columns of `SHAPE`.
+        The columns of `SHAPE`: bounds on Cu, on Cc and on ``(D60 / D30)^2``; NaN where there is none.
     least_cu
         4 for gravel, 6 for sand.
 
     Notes
     -----
-    Where Cu is not known but D30 and D60 are, Cu and Cc are tied: ``Cc = Cu (D30 / D60)^2``, so a curve that is
+    Where Cu is not known but D30 and D60 are, Cu and Cc are tied: ``Cu = Cc (D60 / D30)^2``, so a curve that is
     steep between D30 and D60 can be shown to fail one or the other whatever D10 is.
     """
     cu_low, cu_high = np.fmax(shape["cu_low"], LEAST_CU), np.fmin(shape["cu_high"], np.inf)
     cc_low, cc_high = np.fmax(shape["cc_low"], 0.0), np.fmin(shape["cc_high"], np.inf)
     well = (cu_high >= least_cu) & (cc_high >= LEAST_CC) & (cc_low <= GREATEST_CC)
     poorly = (cu_low < least_cu) | (cc_low < LEAST_CC) | (cc_high > GREATEST_CC)
-    tied = np.flatnonzero((cu_low != cu_high) & ~np.isnan(shape["d30_mm"] + shape["d60_mm"]))
+    tied = np.flatnonzero((cu_low != cu_high) & ~np.isnan(shape["tie_low"] + shape["tie_high"]))
     if len(tied):
-        ratio = (shape["d60_mm"][tied] / shape["d30_mm"][tied]) ** 2
-        low = np.maximum(cu_low[tied], cc_low[tied] * ratio)
-        high = np.minimum(cu_high[tied], cc_high[tied] * ratio)
-        least, greatest = np.maximum(least_cu, LEAST_CC * ratio), GREATEST_CC * ratio
-        well[tied] &= np.maximum(low, least) <= np.minimum(high, greatest)
-        poorly[tied] &= (low < least) | (high > greatest)
+        tie_low, tie_high = shape["tie_low"][tied], shape["tie_high"][tied]
+        low = np.maximum(cu_low[tied], cc_low[tied] * tie_low)
+        high = np.minimum(cu_high[tied], cc_high[tied] * tie_high)
+        is_allowed = np.maximum(low, least_cu) <= np.minimum(high, GREATEST_CC * tie_high)
+        well[tied] &= is_allowed & (high >= LEAST_CC * tie_low)
+        poorly[tied] &= (low < np.maximum(least_cu, LEAST_CC * tie_high)) | (high > GREATEST_CC * tie_low)
     return np.asarray(well + np.uint8(2) * poorly, dtype=np.uint8)
 
 

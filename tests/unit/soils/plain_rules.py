@@ -1,8 +1,8 @@
 """ASTM D2487 and AASHTO M 145 for one sample at a time, plainly: a second writing of the rules, to compare with.
 
-Written from the text of the rules, one sample, one branch after another, with whole numbers from `decimal`; nothing
-of it is shared with geomap. Missing results are None. `symbols_left` and `groups_left` find what missing
-results leave open by trying every whole value of them.
+Written from the text of the rules, one sample, one branch after another, in whole numbers so that nothing is left to
+binary fractions; nothing of it is shared with geomap. Missing results are None. `symbols_left` and `groups_left` find
+what missing results leave open by trying values of them.
 """
 
 from __future__ import annotations
@@ -10,8 +10,6 @@ from __future__ import annotations
 import itertools
 import math
 from dataclasses import dataclass, replace
-from decimal import ROUND_HALF_UP, Decimal
-from fractions import Fraction
 
 
 @dataclass(frozen=True)
@@ -35,13 +33,13 @@ class Sample:
 
 
 def whole(value: float) -> int:
-    return int(Decimal(repr(float(value))).quantize(Decimal(1), ROUND_HALF_UP))
+    return math.floor(value + 0.5)
 
 
 def fines_by_chart(s: Sample) -> str:
     """Return ML, CL-ML, CL, MH or CH; raises LookupError where a limit is missing."""
     ll, pi = limits(s)
-    over_line = pi >= Fraction(73, 100) * (ll - 20)
+    over_line = 100 * pi >= 73 * (ll - 20)
     if ll < 50:
         if over_line and pi > 7:
             return "CL"
@@ -67,7 +65,7 @@ def limits(s: Sample) -> tuple[int, int]:
 def is_organic(s: Sample) -> bool:
     if s.ll is None or s.ll_oven is None:
         return False
-    return Fraction(whole(s.ll_oven), whole(s.ll)) < Fraction(3, 4)
+    return 4 * whole(s.ll_oven) < 3 * whole(s.ll)
 
 
 def d2487(s: Sample) -> tuple[str, str]:
@@ -81,9 +79,7 @@ def d2487(s: Sample) -> tuple[str, str]:
         raise LookupError("p4")
     gravel = 100 - whole(s.p4)
     sand = 100 - gravel - fines
-    letter, noun, other = (
-        ("G", "gravel", "sand") if Fraction(gravel, 100 - fines) > Fraction(1, 2) else ("S", "sand", "gravel")
-    )
+    letter, noun, other = ("G", "gravel", "sand") if 2 * gravel > 100 - fines else ("S", "sand", "gravel")
     items = []
     if fines <= 12:
         word = grading_word(s, letter)
@@ -185,13 +181,13 @@ def m145(s: Sample) -> tuple[str, int]:  # noqa: PLR0911 - one return for each e
         return "A-3", 0
     if pi <= 10:
         return ("A-2-4" if ll <= 40 else "A-2-5"), 0
-    index = max(0, math.floor(Fraction((f - 15) * (pi - 10), 100) + Fraction(1, 2)))
+    index = max(0, ((f - 15) * (pi - 10) + 50) // 100)
     return ("A-2-6" if ll <= 40 else "A-2-7"), index
 
 
 def group_index(f: int, ll: int, pi: int) -> int:
-    first = (f - 35) * (Fraction(2, 10) + Fraction(5, 1000) * (ll - 40))
-    return max(0, math.floor(first + Fraction(1, 100) * (f - 15) * (pi - 10) + Fraction(1, 2)))
+    thousandths = (f - 35) * (200 + 5 * (ll - 40)) + 10 * (f - 15) * (pi - 10)
+    return max(0, (thousandths + 500) // 1000)
 
 
 GREATEST_LIMIT = 500

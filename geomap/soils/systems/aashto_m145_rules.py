@@ -41,7 +41,7 @@ ZERO, PLASTICITY_TERM, BOTH_TERMS, NONE = range(4)
 INDEX_RULE = np.array([NONE, *[ZERO] * 5, *[PLASTICITY_TERM] * 2, *[BOTH_TERMS] * 5, NONE], dtype=np.int8)  # by code
 
 Masks: TypeAlias = NDArray[np.uint16]
-Small: TypeAlias = NDArray[np.uint8]
+Steps: TypeAlias = NDArray[np.int16]
 
 
 @dataclass(frozen=True)
@@ -97,8 +97,8 @@ def limit_zones(ll: Floats, pi: Floats) -> Zones:
     return np.asarray(np.left_shift(np.uint16(1), zone.astype(np.uint16)))
 
 
-def _step(values: Floats, steps: tuple[float, ...]) -> Small:
-    result = np.zeros(len(values), dtype=np.uint8)
+def _step(values: Floats, steps: tuple[float, ...]) -> Steps:
+    result = np.zeros(len(values), dtype=np.int16)  # wide enough for a place in the table of groups
     for step in steps:
         result += values > step
     return result
@@ -133,8 +133,8 @@ def find(columns: Arrays, reading: Reading = whole) -> Found:
     is_decided |= is_single & (no_200 == len(NO_200_STEPS)) & ~(p40 < p200) & ~(p10 < np.fmax(p40, p200))
     zone = _PLACE_OF_BIT[zones]
     groups = _first_groups().ravel()
-    place = (_step(p10, NO_10_STEPS) * np.int16(3) + _step(p40, NO_40_STEPS)) * np.int16(5) + no_200
-    code = groups[place * np.int16(_ZONES) + zone]
+    place = (_step(p10, NO_10_STEPS) * 3 + _step(p40, NO_40_STEPS)) * 5 + no_200
+    code = groups[place * _ZONES + zone]
     open_rows = np.flatnonzero(~is_decided)
     masks = _open_masks(taken(columns, open_rows), p10[open_rows], p40[open_rows], p200[open_rows], zones[open_rows])
     code[open_rows] = np.where(np.isnan(p200[open_rows]), 0, single_code(masks))

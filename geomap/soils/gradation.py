@@ -20,6 +20,9 @@ MEASURED, INTERPOLATED, BOUNDED, MISSING = 0, 1, 2, 3
 
 GRAVEL_MM, SAND_MM, COBBLE_MM, BOULDER_MM = 4.75, 0.075, 75.0, 300.0  # lower limits, ASTM D2487-17 section 3
 SAME_SIZE = 1e-6  # relative; sizes closer than this are one sieve
+# Results are reported in whole percent (ASTM D6913 Method A, from memory): a rise by up to that much toward a finer
+# size is rounding, and the coarser result stands for both, as a sieve stands for the hydrometer that follows it.
+ROUNDING_PCT = 1.0
 
 Ints = NDArray[np.int64]
 Hows = NDArray[np.uint8]
@@ -53,7 +56,8 @@ class Curves:
     start
         Where the points of each sample start, with the end added; shape (samples + 1).
     is_rejected
-        Samples whose points were not used: percent passing rises toward a finer size, or two values for one size.
+        Samples whose points were not used: percent passing rises toward a finer size, or there are two values for one
+        size, by more than rounding.
     """
 
     size_mm: Floats
@@ -176,8 +180,12 @@ def _curves(size: Floats, passing: Floats, row: Ints, rows: int) -> Curves:
     """Return the curves of points sorted by row and size, without those that contradict themselves."""
     is_bad = ~((passing >= 0.0) & (passing <= 100.0) & (size > 0.0))
     same_row = row[1:] == row[:-1]
-    is_bad[1:] |= same_row & (passing[1:] < passing[:-1])
-    is_bad[1:] |= same_row & (size[1:] <= size[:-1] * (1 + SAME_SIZE)) & (passing[1:] != passing[:-1])
+    rise = np.where(same_row, passing[:-1] - passing[1:], 0.0)  # toward the finer size
+    is_bad[1:] |= rise > ROUNDING_PCT
+    is_bad[1:] |= same_row & (size[1:] <= size[:-1] * (1 + SAME_SIZE)) & (rise < -ROUNDING_PCT)
+    while (rise > 0.0).any():
+        passing = np.append(np.where(rise > 0.0, passing[1:], passing[:-1]), passing[-1:])
+        rise = np.where(same_row, passing[:-1] - passing[1:], 0.0)
     is_rejected = np.zeros(rows, dtype=bool)
     is_rejected[row[is_bad]] = True
     if is_rejected.any():

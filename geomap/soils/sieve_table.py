@@ -20,6 +20,7 @@ from geomap.soils.gradation import (
     INTERPOLATED,
     MEASURED,
     MISSING,
+    ROUNDING_PCT,
     SAME_SIZE,
     Curves,
     Hows,
@@ -152,11 +153,18 @@ def table_from_wide(samples: pd.DataFrame) -> SieveTable:
     names = schema.passing_columns(samples.columns)[::-1]
     sizes = np.array([schema.size_from_passing_column(name) for name in names], dtype=np.float64)
     columns = [number(samples[name]) for name in names]
-    is_bad = np.zeros(len(samples), dtype=bool)
-    reached = np.full(len(samples), np.nan)
+    is_bad, is_uneven = np.zeros(len(samples), dtype=bool), np.zeros(len(samples), dtype=bool)
+    finer = np.full(len(samples), np.nan)
     for column in columns:
-        is_bad |= (column < reached) | (column < 0.0) | (column > 100.0)
-        reached = np.fmax(reached, column)
+        rise = finer - column
+        is_bad |= (rise > ROUNDING_PCT) | (column < 0.0) | (column > 100.0)
+        is_uneven |= rise > 0.0
+        finer = np.where(np.isnan(column), finer, column)
+    if is_uneven.any():
+        coarser = np.full(len(samples), np.nan)
+        for place in reversed(range(len(columns))):
+            coarser = np.fmin(coarser, columns[place])
+            columns[place] = np.where(is_uneven & ~np.isnan(columns[place]), coarser, columns[place])
     if is_bad.any():
         columns = [np.where(is_bad, np.nan, column) for column in columns]
     return SieveTable(sizes, tuple(columns), is_bad)

@@ -91,8 +91,17 @@ def test_a_curve_that_contradicts_itself_is_not_used(bad: dict[float, float]) ->
     assert np.isnan(wide.passing(2.0)[0]).all()
 
 
+def test_a_rise_by_rounding_is_taken_as_flat_at_the_coarser_result() -> None:
+    found = curves({4.75: 80.0, 0.075: 34.2, 0.05: 34.9, 0.02: 35.1, 0.002: 10.0})
+    assert found.passing_pct.tolist() == [10.0, 34.2, 34.2, 34.2, 80.0]
+    assert found.is_rejected.tolist() == [False]
+    assert curves({4.75: 80.0, 0.075: 34.0, 0.05: 35.1}).is_rejected.tolist() == [True]
+    wide = pd.DataFrame([{"passing_4_75_mm_pct": 80.0, "passing_0_075_mm_pct": 34.2, "passing_0_05_mm_pct": 34.9}])
+    assert table_from_wide(wide).passing(0.05)[0].tolist() == [34.2]
+
+
 def test_two_values_for_one_size_are_not_used_but_one_value_twice_is() -> None:
-    table = pd.DataFrame({"size_mm": [2.0, 2.0, 2.0, 2.0], "passing_pct": [50.0, 50.0, 50.0, 60.0]})
+    table = pd.DataFrame({"size_mm": [2.0, 2.0, 2.0, 2.0], "passing_pct": [50.0, 50.0, 50.0, 52.0]})
     found = curves_from_long(table, np.array([0, 0, 1, 1]), 2)
     assert found.is_rejected.tolist() == [False, True]
     assert found.passing(2.0)[0] == pytest.approx([50.0, NAN], nan_ok=True)

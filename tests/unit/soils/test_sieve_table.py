@@ -8,7 +8,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from geomap.soils.gradation import Curves
+from geomap.soils.gradation import Curves, curves_from_long
 from geomap.soils.sieve_table import SieveTable, table_from_wide
 from geomap.tables import schema
 
@@ -26,6 +26,19 @@ def tables(draw: st.DrawFn) -> SieveTable:
     frame = pd.DataFrame(rows, columns=[schema.passing_column(size) for size in sizes], dtype=float)
     gaps = draw(st.lists(st.booleans(), min_size=frame.size, max_size=frame.size))
     return table_from_wide(frame.mask(np.array(gaps, dtype=bool).reshape(frame.shape)))
+
+
+def test_rises_within_rounding_are_flattened_alike() -> None:
+    draw = np.random.default_rng(3)
+    curves = np.sort(draw.uniform(0, 100, (500, 6)), axis=1) + draw.choice([0, 0, 0.6, -0.6], (500, 6))
+    wide = pd.DataFrame(curves.clip(0, 100), columns=[schema.passing_column(size) for size in sorted(SIZES)[:6]])
+    long = wide.melt(ignore_index=False, value_name="passing_pct")
+    long["size_mm"] = long["variable"].map(schema.size_from_passing_column)
+    points, table = curves_from_long(long, long.index.to_numpy(), len(wide)), table_from_wide(wide)
+    assert 0 < points.is_rejected.sum() < len(wide)
+    assert points.is_rejected.tolist() == table.is_rejected.tolist()
+    for size in sorted(SIZES)[:6]:
+        assert table.passing(size)[0] == pytest.approx(points.passing(size)[0], nan_ok=True)
 
 
 def by_points(table: SieveTable) -> Curves:

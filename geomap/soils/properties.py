@@ -123,7 +123,7 @@ def essentials(
 ) -> pd.DataFrame:
     """Return those columns of `properties` that classification reads, and what a group name needs besides.
 
-    D sizes, Cu and Cc are looked for only where they can decide: up to 12 % fines.
+    D sizes, Cu and Cc are looked for only where they can decide and are not reported: up to 12 % fines.
 
     Parameters
     ----------
@@ -137,10 +137,12 @@ def essentials(
     record, _ = _sieves(curves, over, [size for size in NAMED_MM if schema.passing_column(size) in needs])
     record |= _oversize(columns, curves, over)
     if "cu_low" in needs:
-        rows = np.flatnonzero(record[schema.passing_column(0.075)] < GREATEST_CLEAN)
+        is_open = np.isnan(columns["cu"]) | np.isnan(columns["cc"])
+        rows = np.flatnonzero((record[schema.passing_column(0.075)] < GREATEST_CLEAN) & is_open)
+        record |= {f"{name}_{end}": columns[name].copy() for name in ("cu", "cc") for end in ("low", "high")}
+        record |= {name: columns[name].copy() for name in REPORTED}
         for name, values in shape(taken(columns, rows), curves.take(rows), over[rows]).items():
-            record[name] = columns[name].copy() if name in columns else np.full(len(over), np.nan)
-            record[name][rows] = values
+            record.setdefault(name, np.full(len(over), np.nan))[rows] = values
     record |= {name: columns[name] for name in needs if name in TESTED and name not in record}
     record |= _flags(tests, columns, organic_limit_pct)
     return pd.DataFrame(record, index=tests.index, copy=False)

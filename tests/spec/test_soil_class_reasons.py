@@ -58,6 +58,7 @@ USCS = [
     # gravel or sand; sand against gravel in the name
     ("p200=20 ll=40 pl=20", "-", "-", "-", "GC;SC", "4.75 mm (No. 4) is missing, so gravel or sand is open"),
     ("p200=20 p10=80 ll=40 pl=20", "SC", "-", "lab", "-", "no group name: it needs percent passing 4.75 mm"),
+    ("p200=3 cu=5 cc=2", "-", "-", "-", "GW;SP", "so gravel or sand is open"),  # Cu 5 is enough for gravel only
     ("p200=90 ll=40 pl=20", "CL", "lean clay", "lab", "-", "-"),
     ("p200=80 ll=40 pl=20", "CL", "-", "lab", "-", "no group name: it needs percent passing 4.75 mm"),
     # organics
@@ -127,6 +128,11 @@ def test_aashto_says_what_is_missing(cells: str, group: str, index: str, left: s
         assert row["aashto_group_candidates"] == left
     assert reason in shown(row["aashto_group_reason"])
     assert (reason == "-") == pd.isna(row["aashto_group_reason"])
+
+
+def test_a_known_shape_is_not_asked_for_where_only_the_side_is_open() -> None:
+    row = classify_samples(sample("p200=3 cu=5 cc=2"), ["astm_d2487"]).iloc[0]
+    assert "Cu and Cc" not in row["uscs_symbol_reason"]
 
 
 def test_candidates_stand_in_the_order_of_the_standard() -> None:

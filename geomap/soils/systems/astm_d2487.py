@@ -47,7 +47,7 @@ NEEDS = (
 
 SYMBOL_NAMES: Mapping[str, str] = MappingProxyType(
     {
-        **{symbol: names._name(symbol, False, 0, False, 0) for symbol in SYMBOLS},
+        **{symbol: names.group_name(symbol, False, 0, False, 0) for symbol in SYMBOLS},
         "OL": "organic clay or organic silt, liquid limit below 50",
         "OH": "organic clay or organic silt, liquid limit 50 or more",
     }
@@ -191,6 +191,10 @@ def _explained(
 def _why_open(columns: Arrays, left: Sets) -> Bits:
     """Return what keeps the symbol of records open."""
     band, grading, zones = left.band, left.grading, left.zones
+
+    def is_both(side: int) -> Flags:
+        return np.asarray((grading & side) == side)
+
     several = (zones & (zones - np.uint16(1))) > 0
     is_few, by_zone = band == rules.DUAL, (band == rules.DIRTY) | (band == rules.FINE)
     cases = {
@@ -198,7 +202,7 @@ def _why_open(columns: Arrays, left: Sets) -> Bits:
         "sieves disagree": band == rules.CONTRADICTORY,
         "index over limit": (zones == 0) & (is_few | by_zone),
         "no 4.75 mm": (band <= rules.DIRTY) & ((grading & rules.GRAVEL) > 0) & ((grading & rules.SAND) > 0),
-        "no shape": (band <= rules.DUAL) & ((grading & rules.WELL) > 0) & ((grading & rules.POORLY) > 0),
+        "no shape": (band <= rules.DUAL) & (is_both(rules.GRAVEL) | is_both(rules.SAND)),
     }
     wanted = (is_few & rules.is_open(zones)) | (by_zone & several)
     return reasons.marked(len(band), cases | reasons.missing_limits(columns, wanted, is_few))

@@ -85,7 +85,7 @@ def chained(stem: str, items: Sequence[str]) -> str:
     return f"{stem} with {', '.join(items[:-1])}, and {items[-1]}"
 
 
-def _name(symbol: str, is_variant: bool, modifier: int, is_organic: bool, stones: int) -> str:
+def group_name(symbol: str, is_variant: bool, modifier: int, is_organic: bool, stones: int) -> str:
     """Return one name, or a blank for a combination that does not occur."""
     if symbol in _FINE:
         stem = _FINE[symbol].replace("clay", "silt") if is_variant else _FINE[symbol]
@@ -112,7 +112,8 @@ def _all_names() -> tuple[tuple[str, ...], NDArray[np.int16]]:
     """Return the distinct names, and the code of each combination (0 for one that does not occur)."""
     stems = [(symbol, False) for symbol in SYMBOLS] + [(symbol, True) for symbol in _VARIANTS]
     spelled = [
-        _name(*stems[stem], modifier, bool(organic), stones) for stem, modifier, organic, stones in np.ndindex(*_SHAPE)
+        group_name(*stems[stem], modifier, bool(organic), stones)
+        for stem, modifier, organic, stones in np.ndindex(*_SHAPE)
     ]
     code = {name: k for k, name in enumerate(dict.fromkeys(filter(None, spelled)), start=1)}
     return tuple(code), np.array([code.get(name, 0) for name in spelled], dtype=np.int16)

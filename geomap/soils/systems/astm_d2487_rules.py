@@ -42,7 +42,6 @@ CLEAN, DUAL, DIRTY, FINE, NO_FINES_TEST, CONTRADICTORY = range(6)
 # Gravel or sand, with the grading term: one bit each.
 GRADED = {"GW": 1, "GP": 2, "SW": 4, "SP": 8}
 GRAVEL, SAND = GRADED["GW"] | GRADED["GP"], GRADED["SW"] | GRADED["SP"]
-WELL, POORLY = GRADED["GW"] | GRADED["SW"], GRADED["GP"] | GRADED["SP"]
 # Zones of the plasticity chart: one bit each.
 ZONES = {"ML": 1, "CL-ML": 2, "CL": 4, "MH": 8, "CH": 16}
 SILT_ZONES = ZONES["ML"] | ZONES["MH"]

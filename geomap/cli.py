@@ -141,7 +141,7 @@ def check(corridor: str, target: str | None, quiet: bool, as_json: bool) -> int:
     with _progress(quiet) as tell:
         gate = gates.check(corridor, tell)
         if target:
-            table_files.save(gate.findings, Path(target))
+            table_files.save(gate.findings, Path(target), "findings")
     blocks = int((gate.findings["action"] == "block").sum())
     if as_json:
         found = json.loads(gate.findings.to_json(orient="records"))

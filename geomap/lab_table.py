@@ -16,6 +16,13 @@ from geomap.readers import borings
 from geomap.readers.options import TableOptions
 from geomap.soils.classification import ASTM_AND_AASHTO, classify_samples
 from geomap.soils.systems import SYSTEMS
+from geomap.tables.findings import Check, together
+from geomap.tables.raw import RawTable
+
+SHEET = "samples"  # name of the sheet or layer that is written
+RENAMED = Check(
+    "heading renamed", "convert", "in this format, headings that differ in more than case, other than fid and geom", ""
+)
 
 
 @dataclass(frozen=True)
@@ -31,7 +38,8 @@ def classify_file(table: Path, target: Path, systems: Sequence[str], sheet: str,
     """Classify the table in a file and write it, with the classes, to another.
 
     Each row is a specimen of its own. The columns of the user are written back as found; where one of them is
-    called like a column of geomap, ours gets ``_geomap`` at its end.
+    called like a column of geomap, whatever the case of its letters, ours gets ``_geomap`` at its end, and a number
+    where that is taken too. A heading that the format cannot take is written under another, and a finding says so.
 
     Parameters
     ----------
@@ -54,7 +62,7 @@ def classify_file(table: Path, target: Path, systems: Sequence[str], sheet: str,
         The target cannot be written.
     """
     table_files.check_ending(target)
-    chosen = [registry.named(SYSTEMS, name, "--system") for name in systems or ASTM_AND_AASHTO]
+    chosen = [registry.named(SYSTEMS, name, "--system") for name in dict.fromkeys(systems or ASTM_AND_AASHTO)]
     form = registry.for_file(borings.FORMATS, table, str(table))
     if table.resolve() == target.resolve():
         raise InputError(problem(str(target), "the table itself", "another file", "geomap does not rewrite your files"))
@@ -66,13 +74,19 @@ def classify_file(table: Path, target: Path, systems: Sequence[str], sheet: str,
     tell("classifying")
     names = [system.NAME for system in chosen]
     classes = classify_samples(samples, names, gradations=taken.used("gradations"))
-    classes = classes.set_axis(raw.original.index)
-    classes.columns = [f"{n}_geomap" if n in raw.original.columns else n for n in classes.columns]
-    tell("writing")
+    counts = {system.NAME: int(classes[system.COLUMN].notna().sum()) for system in chosen}
     texts = classes.select_dtypes("category").columns
     classes[texts] = classes[texts].astype("string")
-    table_files.save(pd.concat([raw.original, classes], axis=1), target)
-    counts = {
-        system.NAME: int(classes.filter(regex=f"^{system.COLUMN}(_geomap)?$").notna().sum().sum()) for system in chosen
-    }
-    return Done(len(raw.original), counts, taken.findings)
+    classes = classes.set_axis(raw.original.index)
+    found = [str(heading) for heading in raw.original.columns]
+    classes.columns = pd.Index(table_files.free_names([str(name) for name in classes.columns], found, "_geomap"))
+    tell("writing")
+    renamed = table_files.save(pd.concat([raw.original, classes], axis=1), target, SHEET)
+    notes = [_note(raw, heading, name) for heading, name in renamed.items()]
+    return Done(len(raw.original), counts, together([taken.findings, *notes]))
+
+
+def _note(raw: RawTable, heading: str, written: str) -> pd.DataFrame:
+    return dataclasses.replace(RENAMED, advice=f"written as {written}").row(
+        heading, heading, file=raw.file, sheet=raw.sheet
+    )

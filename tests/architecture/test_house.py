@@ -22,7 +22,7 @@ ARROWS = {
     "__init__": {"gate", "pipeline", "results", "soils", "errors"},  # for type checkers; loaded when asked for
     "__main__": {"cli"},
     "cli": {"pipeline", "gate", "lab_table", "catalog", "starter", "exports", "errors"},
-    "lab_table": {"readers", "intake", "soils", "exports", "registry", "errors"},
+    "lab_table": {"readers", "intake", "soils", "exports", "registry", "tables", "errors"},
     "pipeline": EVERYTHING | {"inputs", "gate"},
     "gate": EVERYTHING - {"exports", "results", "layers", "geostat"} | {"inputs"},
     "inputs": {"catalog", "corridor", "registry", "readers", "alignment", "soils", "ratings", *LEAVES},

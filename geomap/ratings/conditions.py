@@ -12,7 +12,7 @@ Metamathematics, section 64; from memory.)
 from __future__ import annotations
 
 import ast
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Collection, Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any
 
@@ -20,6 +20,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
+from geomap.ratings.vocabulary import nearest, nearest_column, soil_columns
 from geomap.tables import schema
 
 _COMPARISONS: Mapping[type[ast.cmpop], Callable[[Any, Any], Any]] = {
@@ -30,6 +31,7 @@ _COMPARISONS: Mapping[type[ast.cmpop], Callable[[Any, Any], Any]] = {
     ast.Gt: lambda a, b: a > b,
     ast.GtE: lambda a, b: a >= b,
 }
+_LARGEST = 1e300  # numbers that floats can hold with room to spare
 
 
 class ConditionError(ValueError):
@@ -69,37 +71,59 @@ class Condition:
         """Return the truth for each row of `table`; a column that the table lacks is missing throughout."""
         return _judge(self.tree, table, rows)
 
+    def gaps(self, table: Mapping[str, Any], rows: int) -> Iterator[tuple[str, NDArray[np.bool_]]]:
+        """Give each column with the rows where it is missing and leaves the condition unknown.
 
-def condition_from_text(text: str) -> Condition:
+        A column that comes up more than once is given more than once.
+        """
+        return _gaps(self.tree, table, rows)
+
+
+def condition_from_text(text: str, symbols: Mapping[str, Collection[str]] | None = None) -> Condition:
     """Read a condition.
+
+    Parameters
+    ----------
+    text
+        The condition.
+    symbols
+        For columns of classes, the only texts that they can hold; the texts of other columns are known here.
 
     Raises
     ------
     ConditionError
-        It is not a condition, or it names a column that geomap does not have.
+        It is not a condition, or it names a column that no soil has, or a text that the column cannot hold.
 
     Examples
     --------
     >>> condition_from_text("liquid_limit_pct <= 28 and plasticity_index_pct <= 6").columns
     ('liquid_limit_pct', 'plasticity_index_pct')
     """
+    names: list[str] = []
     try:
         tree = ast.parse(text.strip(), mode="eval").body
+        _check(tree, symbols or {}, names)
     except SyntaxError as error:
         raise ConditionError(f"cannot be read at character {error.offset or 0}") from None
-    names: list[str] = []
-    _check(tree, names)
+    except (RecursionError, MemoryError):
+        raise ConditionError("cannot be read, it is nested too deeply") from None
+    except ConditionError:
+        raise
+    except ValueError:  # a null character, before Python 3.12
+        raise ConditionError("cannot be read") from None
     return Condition(text, tuple(dict.fromkeys(names)), tree)
 
 
-def _check(node: ast.expr, names: list[str]) -> None:
+def _check(node: ast.expr, symbols: Mapping[str, Collection[str]], names: list[str]) -> None:
     if isinstance(node, ast.BoolOp):
         for part in node.values:
-            _check(part, names)
+            _check(part, symbols, names)
     elif isinstance(node, ast.UnaryOp) and isinstance(node.op, ast.Not):
-        _check(node.operand, names)
+        _check(node.operand, symbols, names)
     elif isinstance(node, ast.Compare) and len(node.ops) == 1 and isinstance(node.left, ast.Name):
-        _check_comparison(node, node.left.id, names)
+        column = _soil_column(node.left.id)
+        _check_values(node, column, _values(node, column), symbols)
+        names.append(column.name)
     elif isinstance(node, ast.Constant) and isinstance(node.value, bool):
         pass
     else:
@@ -108,22 +132,54 @@ def _check(node: ast.expr, names: list[str]) -> None:
         )
 
 
-def _check_comparison(node: ast.Compare, name: str, names: list[str]) -> None:
+def _soil_column(name: str) -> schema.Column:
+    if name in soil_columns():
+        return soil_columns()[name]
     try:
-        column = schema.column(name)
+        schema.column(name)
+        why = f"{name!r} is not a column that describes soil"
     except KeyError:
-        raise ConditionError(f"there is no column {name!r}") from None
+        why = f"there is no column {name!r}"
+    near = nearest_column(name)
+    raise ConditionError(f"{why}; " + (f"did you mean {near}?" if near else "take one of the samples table"))
+
+
+def _values(node: ast.Compare, column: schema.Column) -> list[Any]:
+    """Return what the column is compared with, one value or the list, if the operator goes with it."""
+    operator, said = node.ops[0], ast.unparse(node)
     try:
         value = ast.literal_eval(node.comparators[0])
-    except ValueError:
+    except (ValueError, TypeError):
         raise ConditionError(f"{ast.unparse(node.comparators[0])!r} is not a number, a text or a list") from None
-    values = value if isinstance(value, list) else [value]
-    if isinstance(value, list) != isinstance(node.ops[0], ast.In | ast.NotIn):
-        raise ConditionError(f"{ast.unparse(node)!r}: a list goes with `in` and nothing else does")
-    wanted: Any = str if column.type in ("text", "date") else bool if column.type == "flag" else (int, float)
-    if not all(isinstance(v, wanted) for v in values):
-        raise ConditionError(f"{ast.unparse(node)!r}: {name} is compared with {column.allowed}")
-    names.append(name)
+    if isinstance(value, list) != isinstance(operator, ast.In | ast.NotIn):
+        raise ConditionError(f"{said!r}: a list goes with `in` and nothing else does")
+    if value == []:
+        raise ConditionError(f"{said!r}: the list is empty")
+    if not isinstance(operator, ast.In | ast.NotIn | ast.Eq | ast.NotEq):
+        if type(operator) not in _COMPARISONS:
+            raise ConditionError(f"{said!r} is not a comparison with ==, !=, <, <=, >, >=, in or not in")
+        if column.type not in ("number", "integer"):
+            raise ConditionError(f"{said!r}: {column.name} is compared with {column.allowed}, by ==, !=, in or not in")
+    return value if isinstance(value, list) else [value]
+
+
+def _check_values(
+    node: ast.Compare, column: schema.Column, values: list[Any], symbols: Mapping[str, Collection[str]]
+) -> None:
+    for value in values:
+        if not _is_of(column.type, value):
+            raise ConditionError(f"{ast.unparse(node)!r}: {column.name} is compared with {column.allowed}")
+        choices = column.choices or symbols.get(column.name, ())
+        if choices and value not in choices:
+            near = nearest(value, choices)
+            remedy = f"did you mean {near!r}?" if near else "choose one of these"
+            raise ConditionError(f"{column.name} is never {value!r} but one of {', '.join(choices)}; {remedy}")
+
+
+def _is_of(kind: str, value: object) -> bool:
+    if kind in ("number", "integer"):
+        return isinstance(value, int | float) and not isinstance(value, bool) and abs(value) < _LARGEST
+    return isinstance(value, bool if kind == "flag" else str)
 
 
 def _judge(node: ast.expr, table: Mapping[str, Any], rows: int) -> Truth:
@@ -138,6 +194,16 @@ def _judge(node: ast.expr, table: Mapping[str, Any], rows: int) -> Truth:
     if isinstance(node, ast.Constant):
         return Truth(np.full(rows, bool(node.value)), np.full(rows, not node.value))
     return _compare(node, table, rows)
+
+
+def _gaps(node: ast.expr, table: Mapping[str, Any], rows: int) -> Iterator[tuple[str, NDArray[np.bool_]]]:
+    unknown = _judge(node, table, rows).unknown
+    if isinstance(node, ast.Compare) and isinstance(node.left, ast.Name):
+        yield node.left.id, unknown
+    elif isinstance(node, ast.BoolOp | ast.UnaryOp):
+        for part in node.values if isinstance(node, ast.BoolOp) else [node.operand]:
+            for name, missing in _gaps(part, table, rows):
+                yield name, missing & unknown
 
 
 def _compare(node: ast.expr, table: Mapping[str, Any], rows: int) -> Truth:

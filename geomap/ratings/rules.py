@@ -8,9 +8,10 @@ tells why silence is no.
 
 from __future__ import annotations
 
+import re
 import tomllib
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from collections.abc import Collection, Mapping, Sequence
+from dataclasses import dataclass, fields
 from importlib import resources
 from pathlib import Path
 from typing import Any
@@ -21,17 +22,19 @@ from numpy.typing import NDArray
 
 from geomap.errors import UsageError, problem
 from geomap.ratings.conditions import Condition, ConditionError, condition_from_text
+from geomap.ratings.vocabulary import nearest
 
 VERDICTS = ("suitable", "treat", "unsuitable", "not assessed")
 SUITABLE, TREAT, UNSUITABLE, NOT_ASSESSED = range(4)
 # Of several rule sets the worst verdict governs; "not assessed" is worse than treat, for it may hide a no.
 WORST_FIRST = (UNSUITABLE, NOT_ASSESSED, TREAT, SUITABLE)
 
+NO_RULE_MET = "not assessed, no rule is met"
 PURPOSES = ("in_place", "foundation", "fill", "reuse", "embedment")
-_SET_KEYS = {"title", "source", "edition", "jurisdiction", "flag", "applies_to", "note", "rules"}
-_RULE_KEYS = {"id", "clause", "when", "result", "rating", "when_missing", "note", "flag"}
-_REQUIRED_SET = ("title", "source", "edition", "jurisdiction", "flag", "applies_to", "rules")
-_REQUIRED_RULE = ("id", "clause", "when", "result")
+_SET_TEXTS = ("title", "source", "edition", "jurisdiction", "flag", "applies_to")
+_RULE_TEXTS = ("id", "clause", "when", "result")
+_SET_KEYS = (*_SET_TEXTS, "note", "thresholds", "rules")
+_RULE_KEYS = (*_RULE_TEXTS, "rating", "when_missing", "note", "flag")
 
 
 @dataclass(frozen=True)
@@ -44,6 +47,25 @@ class Rule:
     result: str
     rating: str = ""
     silence_is_no: bool = False
+    note: str = ""
+    flag: str = ""
+
+
+@dataclass(frozen=True)
+class Thresholds:
+    """Probabilities that decide the suitability of a stretch; each greater than 0 and at most 1.
+
+    Attributes
+    ----------
+    unsuitable_from
+        The stretch is unsuitable if unsuitable soil is this probable or more.
+    suitable_p_unsuitable_below, suitable_p_not_assessed_below
+        It is suitable only if both are less probable than this.
+    """
+
+    unsuitable_from: float = 0.5
+    suitable_p_unsuitable_below: float = 0.1
+    suitable_p_not_assessed_below: float = 0.2
 
 
 @dataclass(frozen=True)
@@ -58,6 +80,7 @@ class RuleSet:
     flag: str
     applies_to: str
     rules: tuple[Rule, ...]
+    thresholds: Thresholds = Thresholds()
 
     @property
     def columns(self) -> tuple[str, ...]:
@@ -77,26 +100,72 @@ class RuleSet:
         Returns
         -------
         verdict, rule
-            Index into :data:`VERDICTS`, and index of the rule that decided or, for a soil that is not assessed,
-            of the first one left unknown; -1 where no rule was met.
+            Index into :data:`VERDICTS`, and index of the rule that decided; -1 where none did: no rule is met, or
+            one that is left unknown would have given another verdict.
         """
-        possible = np.zeros(rows, dtype=np.int8)  # one bit for each verdict
-        met_by = np.full(rows, -1, dtype=np.int16)
-        unknown_at = np.full(rows, -1, dtype=np.int16)
-        is_open = np.ones(rows, dtype=bool)
-        for number, rule in enumerate(self.rules):
-            truth = rule.condition.judge(table, rows)
-            met = is_open & truth.yes
-            unknown = is_open & truth.unknown & (not rule.silence_is_no)
-            possible[met | unknown] |= 1 << VERDICTS.index(rule.result)
-            met_by[met] = number
-            unknown_at[unknown & (unknown_at < 0)] = number
-            is_open &= ~met
-        possible[is_open] |= 1 << NOT_ASSESSED
+        met_by, unknown = self._search(table, rows)
+        possible = self._possible(met_by, unknown)
         verdict = np.full(rows, NOT_ASSESSED, dtype=np.int8)
         for code in range(len(VERDICTS)):
             verdict[possible == 1 << code] = code
-        return verdict, np.where((verdict == NOT_ASSESSED) & (unknown_at >= 0), unknown_at, met_by)
+        is_split = (possible & (possible - 1)) != 0  # more than one bit
+        return verdict, np.where(is_split, np.int16(-1), met_by)
+
+    def needs(self, table: Mapping[str, Any], rows: int) -> NDArray[np.bool_]:
+        """Return for each soil the columns whose absence keeps it from being assessed.
+
+        Parameters
+        ----------
+        table, rows
+            As for :meth:`codes`.
+
+        Returns
+        -------
+        ndarray
+            True where the column is missing and leaves a rule unknown, shape (rows, columns) in the order of
+            :attr:`columns`; nothing for a soil whose verdict stands without it.
+        """
+        met_by, unknown = self._search(table, rows)
+        possible = self._possible(met_by, unknown)
+        is_split = (possible & (possible - 1)) != 0
+        at = {name: k for k, name in enumerate(self.columns)}
+        missing = np.zeros((rows, len(at)), dtype=bool)
+        for rule, left in zip(self.rules, unknown & is_split, strict=True):
+            if left.any():
+                for name, gap in rule.condition.gaps(table, rows):
+                    missing[:, at[name]] |= gap & left
+        return missing
+
+    def _search(self, table: Mapping[str, Any], rows: int) -> tuple[NDArray[np.int16], NDArray[np.bool_]]:
+        """Return the first rule met, -1 for none, and the rules left unknown before it, shape (rules, rows)."""
+        met_by = np.full(rows, -1, dtype=np.int16)
+        unknown = np.zeros((len(self.rules), rows), dtype=bool)
+        for number, rule in enumerate(self.rules):
+            truth = rule.condition.judge(table, rows)
+            is_open = met_by < 0
+            unknown[number] = is_open & truth.unknown & (not rule.silence_is_no)
+            met_by[is_open & truth.yes] = number
+        return met_by, unknown
+
+    def _possible(self, met_by: NDArray[np.int16], unknown: NDArray[np.bool_]) -> NDArray[np.int8]:
+        """Return the verdicts that the data leave possible, one bit for each."""
+        bits = np.array([1 << VERDICTS.index(rule.result) for rule in self.rules] + [1 << NOT_ASSESSED], dtype=np.int8)
+        possible = bits[met_by]  # -1 takes the last: no rule is met
+        for bit, left in zip(bits[:-1], unknown, strict=True):
+            possible[left] |= bit
+        return possible
+
+
+def strictest(rule_sets: Sequence[RuleSet]) -> Thresholds:
+    """Return the smallest of each threshold; the defaults where there is no rule set.
+
+    Examples
+    --------
+    >>> strictest([])
+    Thresholds(unsuitable_from=0.5, suitable_p_unsuitable_below=0.1, suitable_p_not_assessed_below=0.2)
+    """
+    given = [rule_set.thresholds for rule_set in rule_sets] or [Thresholds()]
+    return Thresholds(**{f.name: min(getattr(t, f.name) for t in given) for f in fields(Thresholds)})
 
 
 def rule_set_names() -> list[str]:
@@ -105,7 +174,12 @@ def rule_set_names() -> list[str]:
     return sorted(f.name.removesuffix(".toml") for f in folder.iterdir() if f.name.endswith(".toml"))
 
 
-def read_rule_set(name: str, folder: Path | None = None, purpose: str | None = "in_place") -> RuleSet:
+def read_rule_set(
+    name: str,
+    folder: Path | None = None,
+    purpose: str | None = "in_place",
+    symbols: Mapping[str, Collection[str]] | None = None,
+) -> RuleSet:
     """Read a rule set by name, or a project's own from a file.
 
     Parameters
@@ -116,20 +190,24 @@ def read_rule_set(name: str, folder: Path | None = None, purpose: str | None = "
         Where a file is looked for.
     purpose
         What it will be used for, one of :data:`PURPOSES`; None where it is only looked at.
+    symbols
+        As for :func:`parse_rule_set`.
 
     Raises
     ------
     UsageError
-        The file is wrong (with rule and reason), or the set is made for another purpose.
+        There is no such set, the file is wrong (with rule and reason), or the set is made for another purpose.
     """
     if name.endswith(".toml"):
         try:
-            text = ((folder or Path()) / name).read_text("utf-8")
+            text = ((folder or Path()) / name).read_text("utf-8-sig")
         except (OSError, UnicodeDecodeError) as error:
             raise UsageError(problem(name, error, "a rule set in TOML", "check the file")) from None
-    else:
+    elif name in rule_set_names():
         text = (resources.files("geomap.ratings") / "rulesets" / f"{name}.toml").read_text("utf-8")
-    rule_set = parse_rule_set(text, name)
+    else:
+        raise UsageError(_not_one_of("rule set", name, rule_set_names()))
+    rule_set = parse_rule_set(text, name, symbols)
     if purpose is not None and rule_set.applies_to != purpose:
         raise UsageError(
             problem(
@@ -139,8 +217,18 @@ def read_rule_set(name: str, folder: Path | None = None, purpose: str | None = "
     return rule_set
 
 
-def parse_rule_set(text: str, name: str) -> RuleSet:
+def parse_rule_set(text: str, name: str, symbols: Mapping[str, Collection[str]] | None = None) -> RuleSet:
     """Read the text of a rule set; `name` is its name in messages and results.
+
+    Parameters
+    ----------
+    text
+        TOML.
+    name
+        Name in messages and results.
+    symbols
+        For columns of classes (``uscs_symbol``), the only texts that they can hold; a condition with another text is
+        refused. A column that is not there takes any text.
 
     Raises
     ------
@@ -151,37 +239,88 @@ def parse_rule_set(text: str, name: str) -> RuleSet:
         data = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
         raise UsageError(problem(name, error, "TOML text", "correct the line")) from None
-    _check_keys(data, _SET_KEYS, _REQUIRED_SET, name)
-    if data["applies_to"] not in PURPOSES:
-        raise UsageError(problem(f"{name}: applies_to", data["applies_to"], ", ".join(PURPOSES), "choose one"))
-    lines = [n for n, line in enumerate(text.splitlines(), 1) if line.strip().replace(" ", "") == "[[rules]]"]
-    rules = tuple(_rule(entry, f"{name}:{line}") for entry, line in zip(data["rules"], lines, strict=False))
-    about = {key: str(data[key]) for key in _REQUIRED_SET if key != "rules"}
-    return RuleSet(name=name, **about, rules=rules)
+    _check_keys(data, _SET_KEYS, (*_SET_TEXTS, "rules"), name)
+    about = {key: _text(data, key, name) for key in _SET_TEXTS}
+    _text(data, "note", name)
+    if about["applies_to"] not in PURPOSES:
+        raise UsageError(_not_one_of(f"{name}: applies_to", about["applies_to"], PURPOSES))
+    rules: dict[str, Rule] = {}
+    for number, entry in enumerate(_entries(data["rules"], name), 1):
+        place = _place(text, name, entry, number)
+        rule = _rule(entry, place, symbols)
+        if rule.id in rules:
+            raise UsageError(
+                problem(f"{name}: rule number {number}", rule.id, "an id of its own", "rename one of them")
+            )
+        rules[rule.id] = rule
+    return RuleSet(**about, name=name, rules=tuple(rules.values()), thresholds=_thresholds(data, name))
 
 
-def _check_keys(entry: Mapping[str, Any], known: set[str], required: Sequence[str], place: str) -> None:
+def _not_one_of(place: str, found: str, choices: Collection[str]) -> str:
+    near = nearest(found, choices)
+    return problem(place, found, ", ".join(choices), f"did you mean {near}?" if near else "choose one")
+
+
+def _check_keys(entry: Mapping[str, Any], known: Sequence[str], required: Sequence[str], place: str) -> None:
     for key in entry:
         if key not in known:
-            raise UsageError(problem(place, key, ", ".join(sorted(known)), "correct or delete the key"))
+            raise UsageError(_not_one_of(place, key, known))
     for key in required:
         if key not in entry:
             raise UsageError(problem(place, f"no {key}", ", ".join(required), f"add {key}"))
 
 
-def _rule(entry: Mapping[str, Any], place: str) -> Rule:
-    _check_keys(entry, _RULE_KEYS, _REQUIRED_RULE, place)
-    place = f"{place}: rule {entry['id']}"
-    if entry["result"] not in VERDICTS:
-        raise UsageError(problem(place, entry["result"], ", ".join(VERDICTS), "choose one"))
-    if entry.get("when_missing", "unknown") not in ("unknown", "not_met"):
-        raise UsageError(problem(place, entry["when_missing"], "unknown, not_met", "choose one"))
+def _text(entry: Mapping[str, Any], key: str, place: str) -> str:
+    """Return a text that must not be blank; a key that is not there is a blank."""
+    value = entry.get(key, "")
+    if not isinstance(value, str):
+        raise UsageError(problem(f"{place}: {key}", value, "a text", "put it in quotation marks"))
+    if key in entry and not value.strip():
+        raise UsageError(problem(f"{place}: {key}", value, "a text", "fill it in"))
+    return value
+
+
+def _entries(rules: object, name: str) -> list[dict[str, Any]]:
+    if not isinstance(rules, list) or not rules or not all(isinstance(entry, dict) for entry in rules):
+        raise UsageError(problem(f"{name}: rules", rules, "one table or more", "write each rule below [[rules]]"))
+    return rules
+
+
+def _place(text: str, name: str, entry: Mapping[str, Any], number: int) -> str:
+    """Return where a rule stands: its line where its id can be found in the text, and otherwise its number."""
+    word = entry.get("id")
+    if not isinstance(word, str) or not word.strip():
+        return f"{name}: rule number {number}"
+    found = re.search(rf"""\bid["']?\s*=\s*["']+{re.escape(word)}["']""", text)
+    line = f":{text.count(chr(10), 0, found.start()) + 1}" if found else ""
+    return f"{name}{line}: rule {word}"
+
+
+def _rule(entry: Mapping[str, Any], place: str, symbols: Mapping[str, Collection[str]] | None) -> Rule:
+    _check_keys(entry, _RULE_KEYS, _RULE_TEXTS, place)
+    texts = {key: _text(entry, key, place) for key in _RULE_KEYS}
+    if texts["result"] not in VERDICTS:
+        raise UsageError(_not_one_of(f"{place}: result", texts["result"], VERDICTS))
+    silence = texts.pop("when_missing") or "unknown"
+    if silence not in ("unknown", "not_met"):
+        raise UsageError(_not_one_of(f"{place}: when_missing", silence, ("unknown", "not_met")))
+    when = texts.pop("when")
     try:
-        condition = condition_from_text(entry["when"])
+        condition = condition_from_text(when, symbols)
     except ConditionError as error:
-        raise UsageError(problem(place, entry["when"], "a condition", str(error))) from None
-    silence = entry.get("when_missing") == "not_met"
-    return Rule(entry["id"], entry["clause"], condition, entry["result"], entry.get("rating", ""), silence)
+        raise UsageError(problem(f"{place}: when", when, "a condition", str(error))) from None
+    return Rule(condition=condition, silence_is_no=silence == "not_met", **texts)
+
+
+def _thresholds(data: Mapping[str, Any], name: str) -> Thresholds:
+    given, place = data.get("thresholds", {}), f"{name}: thresholds"
+    if not isinstance(given, dict):
+        raise UsageError(problem(place, given, "a table", "write the keys below [thresholds]"))
+    _check_keys(given, [f.name for f in fields(Thresholds)], (), place)
+    for key, value in given.items():
+        if isinstance(value, bool) or not isinstance(value, int | float) or not 0 < value <= 1:
+            raise UsageError(problem(f"{place}: {key}", value, "a number greater than 0, at most 1", "correct it"))
+    return Thresholds(**{key: float(value) for key, value in given.items()})
 
 
 def rate(soils: pd.DataFrame, rule_sets: Sequence[RuleSet]) -> pd.DataFrame:
@@ -197,8 +336,9 @@ def rate(soils: pd.DataFrame, rule_sets: Sequence[RuleSet]) -> pd.DataFrame:
     Returns
     -------
     DataFrame
-        Same index: ``suitability``, ``suitability_reason``, ``rule`` (set, rule and clause) and
-        ``subgrade_rating`` (the source's own word), with ``verdict`` as the code.
+        Same index: ``suitability``, ``suitability_reason`` (why a soil is not assessed), ``rule`` (set, rule and
+        clause that decided; never a rule that was not met) and ``subgrade_rating`` (the source's own word), with
+        ``verdict`` as the code.
     """
     table = {name: soils[name].to_numpy() for rule_set in rule_sets for name in rule_set.columns if name in soils}
     judged = [rule_set.codes(table, len(soils)) for rule_set in rule_sets]
@@ -209,7 +349,7 @@ def rate(soils: pd.DataFrame, rule_sets: Sequence[RuleSet]) -> pd.DataFrame:
     verdict = np.choose(governs, [v for v, _ in judged])
     words = [_words(s, v, r, table) for s, (v, r) in zip(rule_sets, judged, strict=True)]
     result["suitability"] = pd.Series(np.array(VERDICTS, dtype=object)[verdict], index=soils.index, dtype="string")
-    for position, name in enumerate(("rule", "subgrade_rating", "suitability_reason")):
+    for position, name in enumerate(("suitability_reason", "rule", "subgrade_rating")):
         texts = np.choose(governs, [w[position] for w in words])
         result[name] = pd.Series(texts, index=soils.index, dtype="string").replace("", pd.NA)
     result["verdict"] = verdict.astype(np.int8)
@@ -218,14 +358,25 @@ def rate(soils: pd.DataFrame, rule_sets: Sequence[RuleSet]) -> pd.DataFrame:
 
 def _words(
     rule_set: RuleSet, verdict: NDArray[np.int8], decided_by: NDArray[np.int16], table: Mapping[str, Any]
-) -> tuple[NDArray[Any], NDArray[Any], NDArray[Any]]:
-    """Return for each soil the rule with its clause, the rating word, and why it is not assessed."""
-    rules, ratings, missing = [f"{rule_set.name}: no rule is met"], [""], ["no rule of the set is met"]
-    for rule in rule_set.rules:
-        rules.append(f"{rule_set.name} {rule.id}: {rule.clause}")
-        ratings.append(rule.rating)
-        missing.append("needs " + ", ".join(rule.condition.columns))
-    at = decided_by.astype(int) + 1
-    reason = np.where(verdict == NOT_ASSESSED, np.array(missing, dtype=object)[at], "")
-    rating = np.where(verdict == NOT_ASSESSED, "", np.array(ratings, dtype=object)[at])
-    return np.array(rules, dtype=object)[at], rating, reason
+) -> tuple[NDArray[np.object_], NDArray[np.object_], NDArray[np.object_]]:
+    """Return for each soil why it is not assessed, the rule with its clause, and the rating word."""
+    rules = rule_set.rules
+    by_rule = np.array([f"{rule.id}: {rule.clause}" for rule in rules] + [""], dtype=object)[decided_by]
+    rating = np.array([rule.rating for rule in rules] + [""], dtype=object)[decided_by]
+    is_met = decided_by >= 0
+    reason = np.where(is_met & (verdict != NOT_ASSESSED), "", by_rule)
+    reason[~is_met] = _not_assessed(
+        rule_set, {name: values[~is_met] for name, values in table.items()}, (~is_met).sum()
+    )
+    rule = np.where(is_met, f"{rule_set.name} " + by_rule, f"{rule_set.name}: " + reason)
+    return reason, rule, rating
+
+
+def _not_assessed(rule_set: RuleSet, table: Mapping[str, Any], rows: int) -> NDArray[np.object_]:
+    """Return for soils that no rule decided what each of them needs."""
+    columns = np.array(rule_set.columns, dtype=object)
+    if not len(columns):
+        return np.full(rows, NO_RULE_MET, dtype=object)
+    patterns, which = np.unique(rule_set.needs(table, rows), axis=0, return_inverse=True)
+    texts = [f"not assessed, needs {', '.join(columns[p])}" if p.any() else NO_RULE_MET for p in patterns]
+    return np.array(texts, dtype=object)[which.reshape(-1)]

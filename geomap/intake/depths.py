@@ -26,6 +26,12 @@ SWAPPED = Check(
     "a base below the top",
     "the row is left out; if the two depths are swapped, change them back",
 )
+NO_THICKNESS = Check(
+    "stratum of no thickness",
+    "reject",
+    "a base below the top",
+    "the row is left out; correct its top or base, or remove the row",
+)
 ZERO_BASE = Check(
     "base depth of zero",
     "reject",
@@ -72,14 +78,18 @@ def _own_depths(intake: Intake, entries: Entries) -> Intake:
     upside_down &= ~no_base
     level = entries.used & in_hole & (_most_of_boring(entries, upside_down) | (top > depth + DEPTH_TOLERANCE_M))
     swapped = entries.used & upside_down & ~level
+    # A sample may be a point; a layer may not.
+    thin = entries.used & (base <= top) & ~(no_base | level | swapped) & (entries.layout == "strata")
     pair = ("top_depth_m", "base_depth_m")
     parts = [
         entries.findings_of(LEVEL_AS_DEPTH, level, *pair),
         entries.findings_of(SWAPPED, swapped, *pair),
+        entries.findings_of(NO_THICKNESS, thin, *pair),
         entries.findings_of(ZERO_BASE, no_base, *pair),
     ]
     entries = entries.set_aside(no_base, "base_depth_m")
     entries = entries.leave_out(level, "level given as depth").leave_out(swapped, "top below base")
+    entries = entries.leave_out(thin, "no thickness")
     if entries.layout == "strata":  # a stratum without a base is not a stratum
         entries = entries.leave_out(no_base, "base_depth_m missing or rejected")
     return intake.having(entries, *parts)

@@ -53,6 +53,40 @@ def test_a_top_below_its_base_leaves_the_row_out_and_is_not_turned_round() -> No
     assert taken.used("samples")["sample"].tolist() == ["S2"]
 
 
+# Defect 18, for strata: a layer has a thickness, a sample may be a point.
+@pytest.mark.parametrize(
+    ("row", "found"),
+    [
+        ("BH-1 | 2 | 2", "top_depth_m 2, base_depth_m 2"),
+        ("BH-1 | 2 | 1.995", "top_depth_m 2, base_depth_m 1.995"),
+        ("BH-1 | 0 | 0", "top_depth_m 0, base_depth_m 0"),
+    ],
+)
+def test_a_stratum_of_no_thickness_is_left_out(row: str, found: str) -> None:
+    taken = screen(accept(dirty(strata=f"{STRATA}\nBH-1 | 0 | 2\n{row}\nBH-1 | 2 | 6\n{REST}")))
+    said = asked(taken, "stratum of no thickness")
+    assert said[["action", "row_number", "found"]].values.tolist() == [["reject", 3, found]]
+    assert checks(taken) == {"stratum of no thickness"}
+    assert taken.rows("strata")["reason"].fillna("").tolist() == ["", "no thickness", "", "", ""]
+
+
+def test_a_stratum_upside_down_is_said_once() -> None:
+    taken = screen(accept(dirty(strata=f"{STRATA}\nBH-1 | 0 | 6\nBH-1 | 3 | 2\n{REST}")))
+    assert checks(taken) == {"top below base"}
+
+
+def test_a_thin_stratum_is_a_stratum() -> None:
+    rows = "BH-1 | 0 | 2\nBH-1 | 2 | 2.01\nBH-1 | 2.01 | 6"
+    assert screen(accept(dirty(strata=f"{STRATA}\n{rows}\n{REST}"))).findings.empty
+
+
+@pytest.mark.parametrize("base", ["2", ""])
+def test_a_sample_may_be_a_point(base: str) -> None:
+    taken = screen(accept(dirty(samples=f"{SAMPLES}\nBH-1 | S1 | 2 | {base}", gradations="")))
+    assert taken.findings.empty
+    assert len(taken.used("samples")) == 1
+
+
 # Defect 18: elevation given as depth. BH-1 has its ground level at 20.5 and is 6 m deep.
 def test_levels_in_the_place_of_depths_are_asked_about() -> None:
     rows = "BH-1 | S1 | 19.5 | 19\nBH-1 | S2 | 17.0 | 16.5"

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
-from geomap.intake import bearing, curves, gradations, measures, plasticity
+from geomap.intake import bearing, curves, gradations, groups, measures, plasticity
 
-CHECKS = (*measures.CHECKS, *plasticity.CHECKS, *gradations.CHECKS, *curves.CHECKS, *bearing.CHECKS)
+CHECKS = (
+    *(*groups.CHECKS, *measures.CHECKS, *plasticity.CHECKS),
+    *(*gradations.CHECKS, *curves.CHECKS, *bearing.CHECKS),
+)

@@ -15,7 +15,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 
-from geomap.intake import depths, rows, soil
+from geomap.intake import depths, rows, soil, strata
 from geomap.intake.agreement import check as agree
 from geomap.intake.bearing import held_out
 from geomap.intake.entries import Entries, Intake
@@ -23,7 +23,7 @@ from geomap.intake.places import check as place
 from geomap.intake.values import accept
 
 SOIL_CHECKS = soil.CHECKS  # all that a laboratory table alone can be checked for
-CHECKS = (*rows.CHECKS, *depths.CHECKS, *soil.CHECKS)
+CHECKS = (*rows.CHECKS, *depths.CHECKS, *strata.CHECKS, *soil.CHECKS)
 
 __all__ = ["CHECKS", "SOIL_CHECKS", "Entries", "Intake", "accept", "agree", "held_out", "place", "screen"]
 

@@ -14,6 +14,7 @@ from itertools import product
 import numpy as np
 import pandas as pd
 
+from geomap.intake import groups, strata
 from geomap.intake.entries import Entries, Flags, Intake
 from geomap.tables.findings import Check
 
@@ -22,6 +23,12 @@ FIELD_GROUP = Check(
     "query",
     "a field group the same as the laboratory group, or next to it",
     "both are kept and the laboratory group governs; see whether the sample and the log belong together",
+)
+LAYER_GROUP = Check(
+    "laboratory group against the layer",
+    "query",
+    "a field group of the layer the same as the laboratory group, or next to it",
+    "both are kept and the laboratory group governs; see whether the sample lies in that layer",
 )
 DESCRIPTION = Check(
     "laboratory group against description",
@@ -77,14 +84,19 @@ def check(intake: Intake, classified: pd.DataFrame, records: pd.DataFrame) -> In
     samples = intake["samples"]
     every = samples.rows.index
     symbol = classified["uscs_symbol"].astype("string").where(classified["uscs_symbol_basis"] == "lab").reindex(every)
-    parts = [*_field(samples, symbol), *_tests(samples, records.reindex(every))]
+    field = samples.rows["visual_group"].str.strip()
+    field = field.where(groups.kinds(field) != groups.NO_SYMBOL)  # such a word is used as no group
+    parts = [
+        *_field(samples, symbol, field),
+        *_layer(intake, symbol.where(field.isna())),
+        *_tests(samples, records.reindex(every)),
+    ]
     return intake.having(samples, *parts)
 
 
-def _field(samples: Entries, symbol: pd.Series) -> list[pd.DataFrame]:
-    group, words = samples.rows["visual_group"], samples.rows["description"]
-    by_group = samples.used & _disagree(symbol, group.str.strip())
-    main = main_soil(words)
+def _field(samples: Entries, symbol: pd.Series, field: pd.Series) -> list[pd.DataFrame]:
+    by_group = samples.used & _disagree(symbol, field)
+    main = main_soil(samples.rows["description"])
     by_words = samples.used & ~by_group & _disagree(symbol, main)
     organic = main.str.contains("organic|peat").fillna(False).to_numpy(dtype=bool)
     mineral = symbol.notna() & ~symbol.str.contains("O|PT", regex=True).fillna(False)
@@ -96,6 +108,19 @@ def _field(samples: Entries, symbol: pd.Series) -> list[pd.DataFrame]:
         samples.findings_of(DESCRIPTION, by_words, "description", found=samples.found("description") + lab),
         samples.findings_of(ORGANIC, untested, "description", found=samples.found("description") + lab),
     ]
+
+
+def _layer(intake: Intake, symbol: pd.Series) -> list[pd.DataFrame]:
+    """Compare with the layer the samples that have no field group of their own."""
+    if "strata" not in intake:
+        return []
+    samples, logged = intake["samples"], intake["strata"]
+    layer = strata.holding(intake)
+    group = strata.of_layer(logged, layer, "visual_group").set_axis(symbol.index)
+    apart = samples.used & _disagree(symbol, group.where(groups.kinds(group) != groups.NO_SYMBOL))
+    found = strata.beside(samples, logged, layer, apart, "visual_group") + "; laboratory group "
+    found = found + symbol.fillna("").to_numpy(object)
+    return [samples.findings_of(LAYER_GROUP, apart, "visual_group", found=found)]
 
 
 def _tests(samples: Entries, records: pd.DataFrame) -> list[pd.DataFrame]:

@@ -8,7 +8,7 @@ from __future__ import annotations
 import pandas as pd
 import pytest
 
-from geomap.intake import accept, agree, screen
+from geomap.intake import Intake, accept, agree, screen
 from geomap.intake.agreement import main_soil
 from tests.unit.intake.written import asked, checks, raw
 
@@ -35,7 +35,8 @@ GROUPS = [
     ("CH", "SM", False),
     ("ML", "CH", False),
     ("CL", "PT", False),
-    ("CL", "boulders", True),  # no group: nothing to compare
+    ("CL", "CL/CH", True),
+    ("SM", "CL/CH", False),  # each of a pair is compared
 ]
 # laboratory group, description, go together
 DESCRIPTIONS = [
@@ -73,7 +74,13 @@ def no_tests(rows: int) -> pd.DataFrame:
 
 @pytest.mark.parametrize(("symbol", "field", "together"), GROUPS)
 def test_laboratory_and_field_group(symbol: str, field: str, together: bool) -> None:
-    assert compared("visual_group", symbol, field) == (set() if together else {"laboratory group against field group"})
+    said = compared("visual_group", symbol, field) - {"field group of two symbols"}
+    assert said == (set() if together else {"laboratory group against field group"})
+
+
+@pytest.mark.parametrize("word", ["Boulders", "clay", "SILTY SAND"])
+def test_a_field_group_that_is_no_symbol_is_not_compared(word: str) -> None:
+    assert compared("visual_group", "CH", word) == {"field group is no symbol"}
 
 
 @pytest.mark.parametrize(("symbol", "words", "together"), DESCRIPTIONS)
@@ -94,6 +101,49 @@ def test_both_opinions_are_shown() -> None:
     classified = pd.DataFrame({"uscs_symbol": ["SM"], "uscs_symbol_basis": ["lab"]})
     said = asked(agree(taken, classified, no_tests(1)), "laboratory group against field group").iloc[0]
     assert (said["heading"], said["found"], said["action"]) == ("log", "CL; laboratory group SM", "query")
+
+
+# laboratory group, field group of the sample, of the layer that holds it, what is asked
+LAYERS = [
+    ("CH", "", "SP", "laboratory group against the layer"),
+    ("CH", "", "SC/CL", None),  # next to one of the pair
+    ("CH", "", "CL", None),
+    ("CH", "", "sp", "laboratory group against the layer"),
+    ("CH", "", "Sand", None),  # no symbol: nothing to compare
+    ("CH", "", "", None),
+    ("CH", "CL", "SP", None),  # the sample's own group is compared, and agrees
+    ("CH", "SP", "CH", "laboratory group against field group"),
+    ("CH", "Clay", "SP", "laboratory group against the layer"),  # a word is no group
+]
+
+
+def with_layer(symbol: str, own: str, logged: str, basis: str = "lab") -> Intake:
+    """Return the intake of one classified sample in the second layer of its boring."""
+    tables = [
+        raw("samples", f"boring | sample | top_depth_m | base_depth_m | visual_group\nBH-1 | S1 | 2 | 2.5 | {own}"),
+        raw(
+            "strata",
+            f"boring | top_depth_m | base_depth_m | USC:visual_group\nBH-1 | 0 | 2 | CH\nBH-1 | 2 | 6 | {logged}",
+        ),
+    ]
+    classified = pd.DataFrame({"uscs_symbol": [symbol], "uscs_symbol_basis": [basis]})
+    return agree(screen(accept(tables)), classified, no_tests(1))
+
+
+@pytest.mark.parametrize(("symbol", "own", "logged", "said"), LAYERS)
+def test_laboratory_group_and_the_layer(symbol: str, own: str, logged: str, said: str | None) -> None:
+    about_symbols = {"field group is no symbol", "field group of two symbols"}
+    assert checks(with_layer(symbol, own, logged)) - about_symbols == ({said} if said else set())
+
+
+def test_the_layer_that_the_laboratory_contradicts_is_named() -> None:
+    said = asked(with_layer("CH", "", "SP"), "laboratory group against the layer").iloc[0]
+    assert said["found"] == "SP in the layer from 2 to 6 m (strata.csv, row 3); laboratory group CH"
+    assert (said["action"], said["file"], said["row_number"], said["sample"]) == ("query", "samples.csv", 2, "S1")
+
+
+def test_a_group_by_eye_is_not_compared_with_the_layer_it_comes_from() -> None:
+    assert checks(with_layer("SP", "", "CH", basis="visual")) == set()
 
 
 def test_organic_soil_without_an_organic_test_is_asked_about() -> None:

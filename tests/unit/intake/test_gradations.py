@@ -157,5 +157,18 @@ def test_rows_left_out_with_their_curve_or_sample_are_listed_by_name() -> None:
     taken = long("BH-1 | S1 | 4.75 | 90", "BH-1 | S1 | 0.425 | 40", "BH-1 | S1 | 0.075 | 55")
     said = asked(taken, "left out with its curve").iloc[0]
     assert (said["heading"], said["found"]) == ("boring, sample", "boring BH-1, sample S1 (in 2 rows: 2-3)")
+    assert said["row_number"] == 2
     lost = long("BH-1 | S1 | 0.425 | 90", "BH-1 | S1 | 0.075 | 55", samples=WIDE + "\nBH-1 | S1 | 9 | | |")
     assert asked(lost, "left out with its sample")["found"].tolist() == ["BH-1 (in 2 rows: 2-3)"]
+
+
+def test_joined_rows_are_named_under_the_headings_of_their_own_file() -> None:
+    head = "Hole:boring | Specimen:sample | sieve:size_mm | passing:passing_pct"
+    rows = [f"BH-1 | S1 | {size} | {passing}" for size, passing in [(19, 90), (9.5, 60), (4.75, 75), (2, 50)]]
+    samples = "Boring no:boring | Sample no:sample | top_depth_m | passing_0_075_mm_pct\nBH-1 | S1 | 1 | 20"
+    taken = screen(accept(dirty(samples=samples, gradations="\n".join([head, *rows]))))
+    said = asked(taken, "left out with its curve").iloc[0]
+    assert said[["file", "heading"]].tolist() == ["gradations.csv", "Hole, Specimen"]
+    assert said["found"] == "Hole BH-1, Specimen S1 (in 3 rows: 2-3, 5)"
+    assert said[["boring", "sample"]].tolist() == ["BH-1", "S1"]
+    assert asked(taken, "passing rises as size falls")["row_number"].tolist() == [4]

@@ -46,7 +46,7 @@ class Gate:
     placed
         Places of the borings on the line.
     judged
-        Soils with properties, classes and verdicts: the samples used, then the logged layers without a sample.
+        Soils with properties, classes and verdicts: the samples used, then the logged layers (``is_layer``).
     levels
         Levels at the center of each step, `edges` being the borders of the steps [m].
     findings, counts
@@ -106,11 +106,18 @@ def check(path: str | Path, tell: Tell = silent) -> Gate:
     judged = judge(taken, job)
     if "uscs_symbol" in judged:
         taken = intake.agree(taken, judged, judged)
+    written = {name: heading for part in given.values() for name, heading in _headings(part).items()}
+    odd_levels = levels.findings.assign(heading=levels.findings["heading"].replace(written))
     if not len(taken.used("borings")):
         of_crs = together([of_crs, NO_BORING.row("", "no boring of use", file=", ".join(corridor.borings.files))])
-    found = together([of_line, taken.findings, of_crs, *(part.findings for part in given.values()), levels.findings])
+    found = together([of_line, taken.findings, of_crs, *(part.findings for part in given.values()), odd_levels])
     counts = pd.concat([taken.counts(), *(part.counts().assign(table=name) for name, part in given.items())])
     return Gate(job, line, chainage, taken, placed, judged, edges, levels, found, counts.reset_index(drop=True))
+
+
+def _headings(levels: intake.Intake) -> dict[str, str]:
+    """Return the heading in the file of each column of a table of levels."""
+    return {column: text for found in levels["levels"].headings.values() for column, text in found.items()}
 
 
 def logged(taken: intake.Intake) -> pd.DataFrame:
@@ -121,19 +128,22 @@ def logged(taken: intake.Intake) -> pd.DataFrame:
 
 
 def judge(taken: intake.Intake, job: Job) -> pd.DataFrame:
-    """Classify and rate every soil: the samples used, then the logged layers without one. This is the only judge."""
+    """Classify and rate every soil: the samples used, then the logged layers. This is the only judge."""
     part = job.corridor.samples
     strata = logged(taken)
     samples = records.with_log(taken.used("samples"), strata)
-    bare = records.bare_layers(samples, strata)
+    layers = records.layer_rows(strata, samples, first=len(taken.rows("samples")))
     gradations = taken.used("gradations")
     described = describe(samples, gradations, part.join_tolerance_m, organic_limit_pct=part.peat_organic_pct)
-    alone = describe(bare, gradations.iloc[:0], None)
+    alone = describe(layers, gradations.iloc[:0], None)
     alone["specimen"] += len(described)
-    soils, properties = pd.concat([samples, bare]), pd.concat([described, alone])
+    properties = pd.concat([described, alone])
+    soils = pd.concat([samples.assign(is_layer=False), layers.assign(is_layer=True)])
+    said = ["origin", "unit"]  # what one row of a specimen says holds for all of it
+    soils[said] = soils[said].groupby(properties["specimen"]).transform("first")
     classes = [system.classify(properties) for system in job.judging]
-    own = ["boring", "sample", "top_depth_m", "base_depth_m", "origin", "unit", "lab_sheet", *schema.SOURCE_COLUMNS]
-    known = pd.concat([soils[own], properties, *classes], axis=1)
+    derived = pd.concat([properties, *classes], axis=1)
+    known = soils.drop(columns=derived.columns, errors="ignore").join(derived)
     categories = known.select_dtypes("category").columns
     known[categories] = known[categories].astype("string")
     return known.join(rules.rate(known, job.rule_sets))

@@ -19,8 +19,15 @@ from geomap.ratings.rules import RuleSet, read_rule_set
 from geomap.readers import alignments, borings, surfaces
 from geomap.readers.options import TableOptions
 from geomap.soils.systems import SYSTEMS, System
+from geomap.tables.findings import Check, together
 from geomap.tables.raw import RawTable
 
+ODD_PLACE = Check(
+    "place of the line",
+    "query",
+    "a line inside the area of its coordinate system",
+    "used as it is; check the crs of the corridor and that x is easting and y northing",
+)
 LEVELS = ("ground", "formation")  # sections whose tables are levels along the line
 
 
@@ -88,7 +95,10 @@ def read_line(job: Job) -> tuple[Line, Chainage, pd.DataFrame]:
     line = line_from_vertices(vertices, part.grid_to_ground, crs.unit_m(job.crs), raw.file)
     pairs = [(equation.back, equation.ahead) for equation in part.equations]
     labels = chainage_from_settings(part.start_chainage, pairs, about.chainage_format, about.length_unit, line.length_m)
-    return line, labels, raw.findings
+    x, y = vertices[:, 0], vertices[:, 1]
+    notes = [crs.area_note(x, y, job.crs), crs.scale_note(x, y, job.crs, part.grid_to_ground)]
+    odd = [ODD_PLACE.row("crs", note, file=job.corridor.path.name) for note in notes if note]
+    return line, labels, together([raw.findings, *odd])
 
 
 def read_tables(job: Job) -> dict[str, list[RawTable]]:

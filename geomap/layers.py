@@ -5,6 +5,7 @@ Nothing is judged or estimated here: columns are chosen, places are labeled, geo
 
 from __future__ import annotations
 
+import functools
 import platform
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
@@ -14,6 +15,7 @@ import numpy as np
 import pandas as pd
 import shapely
 from numpy.typing import NDArray
+from scipy import sparse
 
 from geomap import inputs
 from geomap.corridor import Corridor
@@ -34,6 +36,8 @@ DERIVED = [
     "cu",
     "cc",
 ]  # of the specimen, reported or worked out
+RECORD = ["specimen", "boring", "sample", "top_depth_m", "base_depth_m", "file", "sheet", "row_number"]
+DECIMALS = 6  # of numbers in layers: finer than any test or survey
 FIXED = "fixed default, common practice, no source"
 LIBRARIES = ("numpy", "scipy", "pandas", "shapely", "pyproj", "geopandas", "pyogrio", "folium")
 
@@ -52,6 +56,10 @@ class Found:
         Tables by step, by cell, and by step and record.
     draws
         Verdict codes, shape (steps, realizations).
+    limits
+        The limits of the verdicts, in words.
+    weights, records
+        Shares of the records in each cell of the sheet, and the records.
     """
 
     sheet: Sheet
@@ -60,12 +68,15 @@ class Found:
     cells: pd.DataFrame
     trace: pd.DataFrame
     draws: NDArray[np.int8]
+    limits: str
+    weights: sparse.csr_array
+    records: pd.DataFrame
 
 
 def results(gate: Gate, found: Found, verdicts: Sequence[str]) -> Results:
     """Return the results of a run."""
     about, taken, sheet = gate.job.corridor.corridor, gate.taken, found.sheet
-    label = gate.chainage.label_from_distance
+    label = functools.partial(gate.chainage.label_from_distance, decimals=2)
     holes = borings(taken.rows("borings"), gate.placed, label)
     ends = {"from_distance_m": "from_chainage", "to_distance_m": "to_chainage"}
     subgrade = with_labels(found.steps, label, ends).assign(geometry=gate.line.pieces(gate.edges))
@@ -90,6 +101,7 @@ def results(gate: Gate, found: Found, verdicts: Sequence[str]) -> Results:
         "ground": ground,
         "strata": gate.located(logged(taken)).reset_index(drop=True),
         "counts": gate.counts,
+        "records": found.records[RECORD].reset_index(drop=True),
     }
     tables["run"] = run_record(gate, found, tables["subgrade"])
     return Results(
@@ -103,7 +115,8 @@ def results(gate: Gate, found: Found, verdicts: Sequence[str]) -> Results:
         chainage_breaks=gate.chainage.breaks,
         tables=tables,
         legend=legend({s.NAME: {n: s.SYMBOL_NAMES[n] for n in s.SYMBOLS} for s in gate.job.systems}, verdicts),
-        draws=found.draws,
+        draws=found.draws if gate.job.corridor.formation else found.draws[:, :0],
+        weights=sparse.csr_array(found.weights[np.flatnonzero(sheet.is_used)]),
     )
 
 
@@ -131,8 +144,8 @@ def ranges_in_words(ranges: Ranges, corridor: Corridor) -> str:
 
 
 def layer(name: str, frame: pd.DataFrame) -> pd.DataFrame:
-    """Return `frame` in the layout of an output layer, on a fresh index."""
-    return schema.conform(frame.reset_index(drop=True), schema.layers()[name])
+    """Return `frame` in the layout of an output layer, on a fresh index, without the noise of binary fractions."""
+    return schema.conform(frame.reset_index(drop=True).round(DECIMALS), schema.layers()[name])
 
 
 def with_points(frame: pd.DataFrame) -> pd.DataFrame:
@@ -173,7 +186,7 @@ def alignment(name: str, gate: Gate, ground: pd.DataFrame) -> pd.DataFrame:
     if gate.levels.ground_is_known:
         z = np.interp(line.distance, ground["distance_m"].to_numpy(float)[known], level[known])
         vertices = np.column_stack([vertices, z])
-    start = gate.chainage.label_from_distance([0.0]).iloc[0]
+    start = gate.chainage.label_from_distance([0.0], decimals=2).iloc[0]
     row = {"name": name, "start_chainage": start, "length_m": line.length_m}
     return layer("alignment", pd.DataFrame([row]).assign(geometry=[shapely.linestrings(vertices)]))
 
@@ -211,6 +224,8 @@ def samples(rows: pd.DataFrame, judged: pd.DataFrame, holes: pd.DataFrame) -> pd
     """
     derived = [n for n in judged.columns if n not in rows.columns or n in DERIVED]
     table = rows.drop(columns=DERIVED, errors="ignore").join(judged[derived])
+    index = table["liquid_limit_pct"] - table["plastic_limit_pct"]
+    table["plasticity_index_pct"] = table["plasticity_index_pct"].fillna(index)
     where = holes.drop_duplicates("boring").set_index("boring")
     for name in ("distance_m", "chainage", "offset_m", "geometry"):
         table[name] = table["boring"].map(where[name])
@@ -253,6 +268,7 @@ def run_record(gate: Gate, found: Found, subgrade: pd.DataFrame) -> pd.DataFrame
         **{f"subgrade {key}": value for key, value in corridor.subgrade},
         **{f"profile {key}": value for key, value in corridor.profile},
         "estimation": f"neighbor records, plain form: {found.ranges}. Not fitted to this site.",
+        "verdict limits": found.limits,
         "realizations": corridor.estimation.realizations,
         "seed": corridor.estimation.seed,
         "ground levels": gate.levels.ground_basis,

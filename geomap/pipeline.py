@@ -9,10 +9,10 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from geomap import inputs, layers, registry
-from geomap.errors import InputError
+from geomap.errors import InputError, UsageError, problem
 from geomap.exports import EXPORTS
 from geomap.exports.publish import publish, staging
-from geomap.gate import Gate, Tell, check, logged, silent
+from geomap.gate import Gate, Tell, check, silent
 from geomap.geostat.simulation import probability_field
 from geomap.ground import records
 from geomap.ground.estimate import Estimate, Grid, estimate
@@ -24,6 +24,7 @@ from geomap.results import Results
 
 SCALE = Scale(rules.VERDICTS, rules.WORST_FIRST)
 NOT_DETERMINED = "n/d"
+MOST_CELLS = 5_000_000  # a 100 km corridor in steps of 10 m has 240,000
 
 
 def run_and_write(path: str | Path, tell: Tell = silent) -> tuple[Results, list[Path]]:
@@ -67,17 +68,21 @@ def run(path: str | Path, tell: Tell = silent) -> Results:
     answer = weigh(gate, sheet, ranges)
     judged = tally(answer, gate)
     tell("drawing")
-    draws = draw(gate, sheet, ranges, judged)
+    scale = limits(gate)
+    draws = draw(gate, sheet, ranges, judged, scale)
     holes = gate.located(gate.taken.used("borings")[["boring"]])
-    table = steps.step_table(sheet, judged, draws, imported(gate), holes, SCALE)
+    table = steps.step_table(sheet, judged, draws, imported(gate), holes, scale)
     trace_weights = steps.trace_zone(sheet).mean_weights(judged.weights)
     found = layers.Found(
         sheet=sheet,
         ranges=layers.ranges_in_words(ranges, gate.job.corridor),
         steps=table,
-        cells=cells.cell_table(sheet, judged.odds, judged.probability, SCALE, answer.evidence),
-        trace=subgrade.trace_table(trace_weights, answer.records),
+        cells=cells.cell_table(sheet, judged.odds, judged.probability, scale, answer.evidence),
+        trace=subgrade.trace_table(trace_weights, answer.records["specimen"].to_numpy(int), gate.judged),
         draws=draws,
+        limits=scale.in_words,
+        weights=judged.weights,
+        records=answer.records,
     )
     return layers.results(gate, found, SCALE.words)
 
@@ -87,16 +92,22 @@ def lay_out(gate: Gate) -> cells.Sheet:
     corridor, along = gate.job.corridor, gate.levels
     levels = cells.Levels(along.ground, along.formation, along.width)
     profile = corridor.profile
-    return cells.sheet(gate.edges, levels, profile.thickness_m, profile.depth_m, corridor.subgrade.depth_m)
+    sheet = cells.sheet(gate.edges, levels, profile.thickness_m, profile.depth_m, corridor.subgrade.depth_m)
+    if sheet.is_used.size > MOST_CELLS:
+        found = f"{sheet.is_used.shape[0]:,} steps of {sheet.is_used.shape[1]:,} cells"
+        remedy = "use longer steps or thicker cells, and check the levels"
+        raise UsageError(problem(gate.job.place("profile", "step_m"), found, f"{MOST_CELLS:,} cells in all", remedy))
+    return sheet
 
 
 def weigh(gate: Gate, sheet: cells.Sheet, ranges: Ranges) -> Estimate:
     """Weigh the soils for every cell."""
-    soils = records.one_per_specimen(gate.located(gate.judged))
-    strata = gate.located(logged(gate.taken))
-    has_answer = soils[gate.job.systems[0].COLUMN].notna() | (soils["suitability"] != "not assessed")
+    soils = gate.located(gate.judged)
+    specimens, layers_ = records.one_per_specimen(soils[~soils["is_layer"]]), soils[soils["is_layer"]]
+    classes = [system.COLUMN for system in gate.job.systems]
+    is_answered = specimens[classes].notna().any(axis=1) | (specimens["suitability"] != "not assessed")
     grid = Grid(sheet.centers, sheet.depths, sheet.levels.width / 2)
-    return estimate(soils, strata, has_answer.to_numpy(bool), grid, ranges)
+    return estimate(specimens, layers_, is_answered.to_numpy(bool), grid, ranges)
 
 
 def tally(answer: Estimate, gate: Gate) -> steps.Judged:
@@ -116,19 +127,23 @@ def tally(answer: Estimate, gate: Gate) -> steps.Judged:
 
 def membership(names: pd.Series, classes: tuple[str, ...]) -> NDArray[np.float64]:
     """Return 1 where a record is of a class, shape (records, classes); a missing name is of the first class."""
-    codes = pd.Categorical(names.fillna(classes[0]), categories=list(classes)).codes
+    codes = pd.Index(classes).get_indexer(pd.Index(names.fillna(classes[0])))
+    if (codes < 0).any():
+        raise ValueError(f"not among the classes: {set(names.dropna()) - set(classes)}")
     rows: NDArray[np.float64] = np.eye(len(classes))[codes]
     return rows
 
 
-def draw(gate: Gate, sheet: cells.Sheet, ranges: Ranges, judged: steps.Judged) -> NDArray[np.int8]:
+def draw(gate: Gate, sheet: cells.Sheet, ranges: Ranges, judged: steps.Judged, scale: Scale) -> NDArray[np.int8]:
     """Draw the verdict of the design zone of each step, jointly along the line."""
     settings, profile = gate.job.corridor.estimation, gate.job.corridor.profile
     shape = sheet.is_used.shape
     spacing, reach = (profile.step_m, profile.thickness_m), (ranges.horizontal, ranges.vertical)
     fields = probability_field(shape, spacing, reach, settings.realizations, settings.seed)
     zone = subgrade.natural_zone(sheet)
-    return zone_draws(judged.probability.reshape(*shape, -1), zone.in_zone, fields, SCALE)
+    draws = zone_draws(judged.probability.reshape(*shape, -1), zone.in_zone, fields, scale)
+    material, unknown = subgrade.subgrade_material(sheet), scale.column("not assessed")
+    return subgrade.with_fill(draws, material, imported(gate).verdict, unknown, scale)
 
 
 def imported(gate: Gate) -> steps.Fill:
@@ -137,4 +152,18 @@ def imported(gate: Gate) -> steps.Fill:
     if fill is None:
         return steps.Fill("", SCALE.column("not assessed"), subgrade.IMPORTED_FILL)
     verdict = rules.rate(pd.DataFrame({"uscs_symbol": pd.array([fill.group], "string")}), gate.job.rule_sets).iloc[0]
-    return steps.Fill(fill.group, int(verdict["verdict"]), f"imported fill, by the corridor file: {verdict['rule']}")
+    group = fill.group if gate.job.systems[0].COLUMN == "uscs_symbol" else ""
+    rule = f"imported fill {fill.group}, by the corridor file: {verdict['rule']}; the ground beneath is not judged"
+    return steps.Fill(group, int(verdict["verdict"]), rule)
+
+
+def limits(gate: Gate) -> Scale:
+    """Return the verdicts with the strictest limits of the rule sets."""
+    strictest = rules.strictest(gate.job.rule_sets)
+    return Scale(
+        rules.VERDICTS,
+        rules.WORST_FIRST,
+        strictest.unsuitable_from,
+        strictest.suitable_p_unsuitable_below,
+        strictest.suitable_p_not_assessed_below,
+    )

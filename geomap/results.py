@@ -11,6 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
+from scipy import sparse
 
 CAUTIONS = (
     "Boundaries between borings are inferred; ground may differ between borings and between samples.",
@@ -42,13 +43,18 @@ class Results:
         The first pair is the start; each further one is the ahead side of a chainage equation.
     tables
         The layers by name (`geomap.tables.schema.layers`), each with a ``geometry`` column where its layout says
-        so, and for the profile: ``ground`` (distance_m, ground_level_m, formation_level_m, ground_basis),
+        so, and for the profile: ``records``, ``ground`` (distance_m, ground_level_m, formation_level_m, ground_basis),
         ``strata`` (the logged layers that are used, with distance_m and offset_m) and ``counts`` (table, read,
         used, left_out).
     legend
         One row for each code of each system and of the verdicts: system, code, symbol, name, order.
     draws
-        Verdict code by step and realization, shape (steps, realizations); no columns without a formation.
+        Verdict code of the design zone by step and realization, shape (steps, realizations), fill counted in; no
+        columns without a formation.
+    weights
+        Share of each record in each cell, sparse, shape (cells, records): rows as in ``profile_cells``, columns as in
+        the table ``records`` (specimen, boring, sample, depths, file, sheet, row_number). What is left to 1 is the
+        background.
     cautions
         Texts that every output for people carries.
     """
@@ -64,6 +70,7 @@ class Results:
     tables: Mapping[str, pd.DataFrame]
     legend: pd.DataFrame
     draws: NDArray[np.int8]
+    weights: sparse.csr_array
     cautions: tuple[str, ...] = CAUTIONS
 
     def symbols(self, system: str) -> list[str]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import pandas as pd
@@ -21,6 +21,13 @@ NEEDS_GROUND = Check(
     "query",
     "a ground table, or ground levels of borings",
     "cut and fill cannot be told and subgrade is not assessed; give ground levels",
+)
+FAR_M = 30.0  # deeper cuts and higher fills are rare; common practice, no source
+FAR_APART = Check(
+    "formation far from the ground",
+    "query",
+    f"formation within {FAR_M:g} m of the ground",
+    "used as it is; check the vertical datum, the unit and the reference of both tables",
 )
 SHORT_TABLE = Check(
     "levels do not cover the line",
@@ -100,22 +107,31 @@ def levels_along(
     basis = from_collars.basis if table is None else table.basis
     bare = np.isnan(ground)
     if table is not None and bare.any():
-        ground = np.where(bare, from_collars.level_at(distance_m), ground)
-        basis += "; beyond it from collar levels of borings"
+        beyond = (
+            replace(table, holds_beyond=True) if np.isnan(from_collars.level_at(distance_m)).any() else from_collars
+        )
+        ground = np.where(bare, beyond.level_at(distance_m), ground)
+        basis += "; beyond it " + ("constant" if beyond.basis == table.basis else "from collar levels of borings")
         parts.append(_short(tables["ground"][0], bare))
     is_known = bool(np.isfinite(ground).any())
     if not is_known:
         ground, basis = np.zeros(len(distance_m)), UNKNOWN_BASIS
     formation, width = np.full(len(distance_m), np.nan), np.full(len(distance_m), width_m)
-    if drawing is not None and not is_known:
-        parts.append(NEEDS_GROUND.row("level_m", "no ground level", file=tables["formation"][0]))
-    elif drawing is not None:
+    if drawing is not None:
         file, rows = tables["formation"]
         design, found = levels_from_table(rows, chainage, "formation")
         given, width = design.level_at(distance_m), design.width_at(distance_m, width_m)
         formation = formation_level(given, drawing.reference, drawing.thickness_m, drawing.pipe_diameter_m, ground)
-        parts += [found.fillna({"file": file}), _short(file, np.isnan(formation))]
+        parts += [found.fillna({"file": file}), _short(file, np.isnan(formation)), _far(file, ground - formation)]
+        if not is_known:
+            parts.append(NEEDS_GROUND.row("level_m", "no ground level", file=file))
+            formation = np.full(len(distance_m), np.nan)
     return Along(ground, formation, width, basis, is_known, together(parts))
+
+
+def _far(file: str, depth: Floats) -> pd.DataFrame:
+    worst = float(np.nanmax(np.abs(depth), initial=0.0))
+    return FAR_APART.row("level_m", f"up to {worst:.1f} m apart", file=file) if worst > FAR_M else pd.DataFrame()
 
 
 def _short(file: str, bare: NDArray[np.bool_]) -> pd.DataFrame:

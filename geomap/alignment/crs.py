@@ -19,6 +19,7 @@ from geomap.errors import UsageError, problem
 Floats = NDArray[np.float64]
 
 PSEUDO_MERCATOR = "Popular Visualisation Pseudo Mercator"  # method name, EPSG dataset, method 1024
+AREA_MARGIN_DEG = 1.0  # beyond the area of use that a line may reach; common practice, no source
 LENGTH_ERROR_PPM = 1000.0  # 1 m in 1 km; common practice, no source
 AREA_MARGIN_DEG = 0.01  # an area without width is none to some releases of PROJ
 _RIGHT_HANDED = {("east", "north"), ("north", "east"), ("west", "south")}  # the second is read as the first
@@ -200,3 +201,25 @@ def _moved(transformer: Transformer, x: Floats, y: Floats) -> tuple[Floats, Floa
     # Never one point alone: pyproj before 3.7 takes an array of one for a scalar.
     new_x, new_y = transformer.transform(np.append(x, np.nan), np.append(y, np.nan))
     return np.asarray(new_x)[:-1].reshape(x.shape), np.asarray(new_y)[:-1].reshape(x.shape)
+
+
+def area_note(x: ArrayLike, y: ArrayLike, crs: CRS) -> str:
+    """Return a sentence where the line lies outside the area that its system is made for, else a blank text.
+
+    Parameters
+    ----------
+    x, y
+        Vertices of the alignment.
+    crs
+        Projected system of x and y.
+    """
+    area = crs.area_of_use
+    if area is None:
+        return ""
+    to_degrees = Transformer.from_crs(crs, CRS("EPSG:4326"), always_xy=True)
+    longitude, latitude = to_degrees.transform(np.mean(np.asarray(x, float)), np.mean(np.asarray(y, float)))
+    east = (longitude - area.west + AREA_MARGIN_DEG) % 360.0 <= (area.east - area.west) % 360.0 + 2 * AREA_MARGIN_DEG
+    if east and area.south - AREA_MARGIN_DEG <= latitude <= area.north + AREA_MARGIN_DEG:
+        return ""
+    place = f"{latitude:.2f} north, {longitude:.2f} east" if np.isfinite(latitude) else "no place on earth"
+    return f"the line lies at {place}, outside the area of {crs.name} ({area.name})"

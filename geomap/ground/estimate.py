@@ -13,6 +13,7 @@ from threadpoolctl import threadpool_limits
 from geomap.errors import InputError
 from geomap.ground import neighbors, records
 from geomap.ground.neighbors import Ensemble, Points, Ranges
+from geomap.ground.voices import voices
 
 Floats = NDArray[np.float64]
 
@@ -44,12 +45,16 @@ class Grid:
         """Steps, rows."""
         return len(self.distance), len(self.depth)
 
-    def cells(self) -> Points:
-        """Return the centers on the line, step by step and downward in each."""
+    @property
+    def thickness(self) -> float:
+        """Thickness of a row [m]; the first row begins at the ground."""
+        return 2.0 * float(self.depth[0])
+
+    def cells(self) -> Floats:
+        """Return distance, offset and depth of the centers [m], step by step and downward in each."""
         steps, rows = self.shape
-        nought = np.zeros(steps * rows, dtype=np.int64)
         depth = np.tile(self.depth, steps)
-        return Points(np.repeat(self.distance, rows), np.zeros(steps * rows), depth, nought, nought)
+        return np.column_stack([np.repeat(self.distance, rows), np.zeros(steps * rows), depth])
 
 
 @dataclass(frozen=True)
@@ -61,7 +66,7 @@ class Estimate:
     ensemble
         Shares of the records in each cell, cells in the order of `Grid.cells`.
     records
-        The soils that vote, in the order of the ensemble's records; the index points into the table of soils.
+        The specimens and layers that speak, in the order of the ensemble's records.
     evidence
         observed, inferred or no data for each cell.
     """
@@ -72,20 +77,17 @@ class Estimate:
 
 
 def estimate(
-    soils: pd.DataFrame, layers: pd.DataFrame, has_answer: NDArray[np.bool_], grid: Grid, ranges: Ranges
+    specimens: pd.DataFrame, layers: pd.DataFrame, is_answered: NDArray[np.bool_], grid: Grid, ranges: Ranges
 ) -> Estimate:
     """Weigh the soils of a corridor for every cell of its profile.
 
     Parameters
     ----------
-    soils
-        One row for each specimen and each logged layer without one (`records.soils`), with ``boring``,
-        ``distance_m``, ``offset_m``, ``top_depth_m``, ``base_depth_m``, ``hole_depth_m``, ``origin``, ``unit``.
-    layers
-        Logged layers with ``boring``, ``distance_m``, ``offset_m``, ``top_depth_m``, ``base_depth_m``, ``origin``,
-        ``unit``; may be empty.
-    has_answer
-        For each row of `soils`, whether it has a group or a verdict.
+    specimens, layers
+        One row for each specimen, and one for each logged layer, with ``boring``, ``distance_m``, ``offset_m``,
+        ``top_depth_m``, ``base_depth_m``, ``hole_depth_m``, ``origin``, ``unit``; either may be empty.
+    is_answered
+        For each specimen, whether it has a class or a verdict.
     grid, ranges
         Where to estimate, and how far soils resemble each other.
 
@@ -94,91 +96,71 @@ def estimate(
     InputError
         There is no soil to learn from.
     """
-    placed = soils["distance_m"].notna().to_numpy() & np.isfinite(records.middle_depth(soils))
-    soils, has_answer = soils.loc[placed], has_answer[placed]
-    if not len(soils):
+    placed = specimens["distance_m"].notna().to_numpy() & np.isfinite(records.middle_depth(specimens))
+    specimens, is_answered = specimens.loc[placed], is_answered[placed]
+    thick = (layers["base_depth_m"] > layers["top_depth_m"]).to_numpy(bool, na_value=False)
+    layers = layers.loc[layers["distance_m"].notna().to_numpy() & thick]
+    if not len(specimens) and not len(layers):
         raise InputError("no sample or logged layer lies on the corridor; nothing can be estimated: check the borings")
-    layers = layers.loc[layers["distance_m"].notna()]
-    pieces = _pieces(layers, _thickness(grid))
-    names, borings = records.domains(soils), pd.concat([soils["boring"], layers["boring"]])
-    domain_codes = {name: code for code, name in enumerate(dict.fromkeys([*names, *records.domains(layers)]))}
-    boring_codes = {name: code for code, name in enumerate(dict.fromkeys(borings))}
-    layer_points = _points(pieces, records.domains(pieces), domain_codes, boring_codes)
-    names = _guess_unknown(soils, names, layer_points, domain_codes)
-    votes = records.voters(names, has_answer)
-    soils, names = soils.loc[votes], names[votes]
-    points = _points(soils, names, domain_codes, boring_codes)
+    spoken = voices(specimens, layers, is_answered, grid.thickness)
+    spoken["domain"] = _guess_unknown(spoken, ranges)
+    speaking, record = np.unique(spoken["record"].to_numpy(np.int64), return_inverse=True)
+    points = Points(
+        distance=spoken["distance_m"].to_numpy(float),
+        offset=spoken["offset_m"].to_numpy(float),
+        depth=spoken["depth_m"].to_numpy(float),
+        domain=pd.factorize(spoken["domain"])[0].astype(np.int64),
+        boring=pd.factorize(spoken["boring"])[0].astype(np.int64),
+        record=record.astype(np.int64),
+    )
     rows = np.tile(np.arange(len(grid.depth)), len(grid.distance))
     # Many middle-sized solves: on two or more threads the linear algebra waits for itself, up to seven times as long.
     with threadpool_limits(limits=1, user_api="blas"):
-        ensemble = neighbors.ensemble(grid.cells(), rows, points, layer_points, ranges)
-    return Estimate(ensemble, soils, _evidence(ensemble, soils, layers, grid))
+        ensemble = neighbors.ensemble(grid.cells(), rows, points, bool(len(layers)), ranges)
+    soils = pd.concat([specimens, layers])
+    return Estimate(ensemble, soils.iloc[speaking], _evidence(ensemble, soils.iloc[speaking], soils, grid))
 
 
-def _thickness(grid: Grid) -> float:
-    return float(np.diff(grid.depth).min()) if len(grid.depth) > 1 else 2 * float(grid.depth[0])
-
-
-def _pieces(layers: pd.DataFrame, thickness: float) -> pd.DataFrame:
-    """Cut logged layers into pieces of about one thickness, so that a thick layer speaks over its whole depth."""
-    top, base = layers["top_depth_m"].to_numpy(float), layers["base_depth_m"].to_numpy(float)
-    count = np.maximum(1, np.round((base - top) / thickness)).astype(int)
-    which = np.repeat(np.arange(len(layers)), count)
-    number = np.arange(len(which)) - np.repeat(np.cumsum(count) - count, count)
-    height = ((base - top) / count)[which]
-    pieces = layers.iloc[which].copy()
-    pieces["top_depth_m"] = top[which] + number * height
-    pieces["base_depth_m"] = pieces["top_depth_m"] + height
-    return pieces
-
-
-def _points(
-    table: pd.DataFrame, names: pd.Series, domain_codes: dict[str, int], boring_codes: dict[str, int]
-) -> Points:
-    return Points(
-        distance=table["distance_m"].to_numpy(float),
-        offset=table["offset_m"].to_numpy(float),
-        depth=records.middle_depth(table),
-        domain=np.array([domain_codes[name] for name in names], dtype=np.int64),
-        boring=np.array([boring_codes[name] for name in table["boring"]], dtype=np.int64),
-    )
-
-
-def _guess_unknown(soils: pd.DataFrame, names: pd.Series, layers: Points, domain_codes: dict[str, int]) -> pd.Series:
-    """Give a soil whose origin and unit nobody stated the domain of the nearest logged piece, where there is one."""
-    unknown = (names == records.UNKNOWN_DOMAIN).to_numpy()
-    if not unknown.any() or not len(layers):
+def _guess_unknown(spoken: pd.DataFrame, ranges: Ranges) -> pd.Series:
+    """Give a point whose origin and unit nobody stated the domain of the nearest point that has one, if any has."""
+    names = spoken["domain"].astype(object).copy()
+    unknown = (names == records.UNKNOWN_DOMAIN).to_numpy(bool)
+    if not unknown.any() or unknown.all():
         return names
-    model = Ranges().model
-    here = _points(soils[unknown], names[unknown], domain_codes, dict.fromkeys(soils["boring"], 0))
-    _, nearest = KDTree(model.scaled(layers.places)).query(model.scaled(here.places))
-    domain_names = np.array(list(domain_codes), dtype=object)
-    result = names.copy()
-    result[unknown] = domain_names[layers.domain[nearest]]
-    return result
+    scaled = ranges.model.scaled(spoken[["distance_m", "offset_m", "depth_m"]].to_numpy(float))
+    # The points of a record go together: they follow the middle one.
+    of_record = pd.DataFrame(scaled[unknown]).groupby(spoken["record"][unknown].to_numpy()).mean()
+    _, nearest = KDTree(scaled[~unknown]).query(of_record.to_numpy(float))
+    guess = dict(zip(of_record.index, names[~unknown].to_numpy()[nearest], strict=True))
+    names[unknown] = spoken["record"][unknown].map(guess)
+    return names
 
 
-def _evidence(ensemble: Ensemble, soils: pd.DataFrame, layers: pd.DataFrame, grid: Grid) -> NDArray[np.object_]:
+def _evidence(ensemble: Ensemble, speaking: pd.DataFrame, soils: pd.DataFrame, grid: Grid) -> NDArray[np.object_]:
     depth = np.tile(grid.depth, len(grid.distance))
     no_data = ensemble.background_weight >= NO_DATA_BACKGROUND
-    no_data |= depth > ensemble.deepest(soils["hole_depth_m"].to_numpy(float))
+    no_data |= depth > ensemble.deepest(speaking["hole_depth_m"].to_numpy(float))
     evidence = np.where(no_data, NO_DATA, INFERRED).astype(object)
-    evidence[_observed(soils, grid) | _observed(layers, grid)] = OBSERVED
+    evidence[_observed(soils, grid)] = OBSERVED
     return evidence
 
 
 def _observed(intervals: pd.DataFrame, grid: Grid) -> NDArray[np.bool_]:
-    """Return for each cell whether an interval of a hole beside the step covers its middle depth."""
-    steps, rows = grid.shape
-    result = np.zeros((steps, rows), dtype=bool)
+    """Return for each cell whether a hole beside the center of the step shows it.
+
+    An interval shows the cells whose middle it covers, which is at least half of their thickness, and the cell in
+    which its own middle lies, so that a short sample or one without a base shows one cell.
+    """
+    result = np.zeros(grid.shape, dtype=bool)
     distance = intervals["distance_m"].to_numpy(float)
     first = np.searchsorted(grid.distance, distance - OBSERVED_ALONG_M, side="left")
     last = np.searchsorted(grid.distance, distance + OBSERVED_ALONG_M, side="right")
+    middle = records.middle_depth(intervals)
     top = intervals["top_depth_m"].to_numpy(float)
-    base = intervals["base_depth_m"].to_numpy(float)
-    base = np.where(np.isnan(base), top, base)
-    upper = np.searchsorted(grid.depth, top, side="left")
-    lower = np.searchsorted(grid.depth, base, side="right")
+    base = np.fmax(intervals["base_depth_m"].to_numpy(float), top)
+    own = np.floor(middle / grid.thickness).astype(np.int64)
+    upper = np.minimum(np.searchsorted(grid.depth, top, side="left"), own)
+    lower = np.minimum(np.maximum(np.searchsorted(grid.depth, base, side="right"), own + 1), len(grid.depth))
     # One row for each interval and each step beside it, then one for each row of cells: few, as holes are few.
     which = np.repeat(np.arange(len(intervals)), np.maximum(last - first, 0))
     step = _runs(first, last)

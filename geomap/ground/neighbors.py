@@ -2,9 +2,11 @@
 
 For each cell:
 
-1. the layer tables say how likely each *domain* (one origin and unit) is: simple kriging of the logged layers;
+1. logs and samples say how likely each *domain* (one origin and unit) is: simple kriging of their points;
 2. inside a domain, its own records share the weight: simple-kriging weights, made non-negative;
 3. what they leave unexplained goes to the background of the domain: its records by depth, borings counted alike.
+
+A record speaks at one point or at many (`geomap.ground.voices`); its weight is the sum of theirs.
 
 The weights are one shared set for all soil properties, so every classification and rating made from them agrees.
 Relatives: indicator kriging with one shared model (Journel 1983, Mathematical Geology 15:445; from memory).
@@ -12,7 +14,6 @@ Relatives: indicator kriging with one shared model (Journel 1983, Mathematical G
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -20,7 +21,7 @@ from numpy.typing import NDArray
 from scipy import sparse
 
 from geomap.geostat.covariances import Model, exponential
-from geomap.geostat.kriging import simple_kriging
+from geomap.geostat.kriging import simple_kriging_blocks
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -33,22 +34,18 @@ BACKGROUND_DEPTH_M = 1.0  # half width of the depth window of samples in the bac
 LAYER_DEPTH_M = 0.1  # the same for logged layers, which are known at every depth; our choice
 LEAST_WEIGHT = 0.001  # smaller weights are given to the background
 NEAREST = 48  # points that each cell may call on, in scaled coordinates; its block of cells shares them
-BLOCK_CELLS = 4000  # cells weighed at once, for memory
-LEAST_ODDS = 1e-9
 
 
 @dataclass(frozen=True)
 class Points:
-    """Places with a domain: records or pieces of logged layers.
+    """Places where records speak.
 
     Attributes
     ----------
     distance, offset, depth
         [m]; offset right positive, depth below ground.
-    domain
-        Code of the domain, from 0.
-    boring
-        Code of the boring, from 0.
+    domain, boring, record
+        Codes from 0.
     """
 
     distance: Floats
@@ -56,6 +53,7 @@ class Points:
     depth: Floats
     domain: Ints
     boring: Ints
+    record: Ints
 
     def __len__(self) -> int:
         return len(self.distance)
@@ -64,12 +62,6 @@ class Points:
     def places(self) -> Floats:
         """Coordinates, shape (points, 3) [m]."""
         return np.column_stack([self.distance, self.offset, self.depth])
-
-    def take(self, which: slice | NDArray[np.generic]) -> Points:
-        """Return some of the points, by position or mask."""
-        return Points(
-            self.distance[which], self.offset[which], self.depth[which], self.domain[which], self.boring[which]
-        )
 
 
 @dataclass(frozen=True)
@@ -149,82 +141,75 @@ class Ensemble:
         return carried.max(axis=1).toarray().ravel()
 
 
-def ensemble(cells: Points, depth_row: Ints, records: Points, layers: Points, ranges: Ranges) -> Ensemble:
+def ensemble(cells: Floats, depth_row: Ints, points: Points, is_logged: bool, ranges: Ranges) -> Ensemble:
     """Weigh the records for every cell.
 
     Parameters
     ----------
     cells
-        Cell centers, in order of distance; ``domain`` and ``boring`` are not looked at.
+        Distance, offset and depth of the cell centers [m], shape (cells, 3), in order of distance.
     depth_row
         Row of each cell in depth, from 0.
-    records
-        Records that vote.
-    layers
-        Pieces of logged layers, about one for each thickness; none where there is no layer table.
+    points
+        Where the records speak; at least one.
+    is_logged
+        Whether logged layers are among the points, so that domains are known at every depth of a hole.
     ranges
         Correlation along the line, across it, and in depth.
     """
-    count = int(max(records.domain.max(initial=0), layers.domain.max(initial=0))) + 1
     rows = int(depth_row.max(initial=0)) + 1
-    row_depth = np.bincount(depth_row, cells.depth, rows) / np.maximum(np.bincount(depth_row, minlength=rows), 1)
-    voting = np.bincount(records.domain, minlength=count) > 0
-    logged = (layers, LAYER_DEPTH_M) if len(layers) else (records, BACKGROUND_DEPTH_M)
-    prior = _domain_prior(*logged, row_depth, count)
-    weights, shares = [], []
-    for block in _blocks(len(cells)):
-        here = cells.take(block)
-        odds = prior[depth_row[block]]
-        if len(layers):
-            # Without a nugget: what the log says at a hole is taken as it stands.
-            w = _weights(here, layers, Ranges(ranges.horizontal, ranges.vertical, 0.0))
-            odds = w @ _one_hot(layers.domain, count) + (1 - w.sum(axis=1))[:, None] * odds
-        odds = np.where(voting, odds + LEAST_ODDS, 0.0)  # a domain without records leaves its odds to the others
-        odds /= odds.sum(axis=1, keepdims=True)
-        block_weights, block_share = _share(here, records, odds, ranges)
-        weights.append(block_weights)
-        shares.append(block_share)
-    return Ensemble(
-        weights=sparse.csr_array(sparse.vstack(weights)),
-        background_share=np.vstack(shares),
-        background=_background(records, row_depth, count),
-        depth_row=depth_row,
-        record_domain=records.domain,
-    )
+    row_depth = np.bincount(depth_row, cells[:, 2], rows) / np.maximum(np.bincount(depth_row, minlength=rows), 1)
+    by_domain, by_record = _one_hot(points.domain), _one_hot(points.record)
+    narrow = _depth_window(row_depth, points, LAYER_DEPTH_M if is_logged else BACKGROUND_DEPTH_M)
+    odds = _odds(cells, points, (narrow @ by_domain)[depth_row], ranges)
+    weights, share = _share(cells, points, odds, ranges)
+    window = _depth_window(row_depth, points, BACKGROUND_DEPTH_M)
+    in_domain = window @ by_domain
+    background = (window / np.maximum(in_domain[:, points.domain], np.finfo(float).tiny)) @ by_record
+    record_domain = np.zeros(by_record.shape[1], dtype=np.int64)
+    record_domain[points.record] = points.domain
+    return Ensemble(weights, share, np.asarray(background), depth_row, record_domain)
 
 
-def _blocks(cells: int) -> Iterator[slice]:
-    for start in range(0, cells, BLOCK_CELLS):
-        yield slice(start, min(start + BLOCK_CELLS, cells))
+def _odds(cells: Floats, points: Points, prior: Floats, ranges: Ranges) -> Floats:
+    """Return how likely each domain is in each cell, shape (cells, domains).
+
+    Without a nugget: what the log says at a hole is taken as it stands. Far from holes the domains are as common
+    as they are at that depth.
+    """
+    odds: Floats = prior / prior.sum(axis=1, keepdims=True)
+    of_domain = np.eye(odds.shape[1])[points.domain]
+    exact = Ranges(ranges.horizontal, ranges.vertical, 0.0).model
+    for block in simple_kriging_blocks(points.places, cells, exact, nonnegative=True, neighbors=NEAREST):
+        rest = 1.0 - block.weights.sum(axis=1, keepdims=True)
+        odds[block.targets] = block.weights @ of_domain[block.points] + rest * odds[block.targets]
+    odds /= odds.sum(axis=1, keepdims=True)
+    return odds
 
 
-def _weights(cells: Points, points: Points, ranges: Ranges) -> Floats:
-    """Return non-negative simple-kriging weights, shape (cells, points); rows add to 1 at most."""
-    return simple_kriging(points.places, cells.places, ranges.model, nonnegative=True, neighbors=NEAREST).weights
-
-
-def _share(cells: Points, records: Points, odds: Floats, ranges: Ranges) -> tuple[sparse.csr_array, Floats]:
-    """Split the odds of the domains among their records and backgrounds."""
-    total = sparse.csr_array((len(cells), len(records)))
+def _share(cells: Floats, points: Points, odds: Floats, ranges: Ranges) -> tuple[sparse.csr_array, Floats]:
+    """Split the odds of the domains among their records; what no record earns is left to the background."""
     share = odds.copy()
-    for domain in np.unique(records.domain):
-        mine = np.flatnonzero(records.domain == domain)
+    found: list[tuple[Floats, Ints, Ints]] = []
+    for domain in np.unique(points.domain):
+        mine = np.flatnonzero(points.domain == domain)
         possible = np.flatnonzero(odds[:, domain] > LEAST_WEIGHT)
-        if not len(possible):
-            continue
-        w = _weights(cells.take(possible), records.take(mine), ranges) * odds[possible, domain][:, None]
-        w[w < LEAST_WEIGHT] = 0.0
-        share[possible, domain] -= w.sum(axis=1)
-        at_cell, at_record = np.nonzero(w)
-        entries = (w[at_cell, at_record], (possible[at_cell], mine[at_record]))
-        total = total + sparse.csr_array(entries, shape=total.shape)
-    return total, np.clip(share, 0.0, 1.0)
+        places, targets = points.places[mine], cells[possible]
+        for block in simple_kriging_blocks(places, targets, ranges.model, nonnegative=True, neighbors=NEAREST):
+            at = possible[block.targets]
+            w = block.weights * odds[at, domain][:, None]
+            w[w < LEAST_WEIGHT] = 0.0
+            share[at, domain] -= w.sum(axis=1)
+            cell, point = np.nonzero(w)
+            found.append((w[cell, point], at[cell], points.record[mine[block.points[point]]]))
+    values, at_cell, at_record = (np.concatenate(part) for part in zip(*found, strict=True))
+    shape = (len(cells), int(points.record.max()) + 1)
+    return sparse.csr_array((values, (at_cell, at_record)), shape=shape), np.clip(share, 0.0, 1.0)
 
 
-def _one_hot(codes: Ints, count: int) -> Floats:
-    result = np.zeros((len(codes), count))
-    result[np.arange(len(codes)), codes] = 1.0
-    return result
+def _one_hot(codes: Ints) -> sparse.csr_array:
+    entries = (np.ones(len(codes)), (np.arange(len(codes)), codes))
+    return sparse.csr_array(entries, shape=(len(codes), int(codes.max(initial=0)) + 1))
 
 
 def _depth_window(row_depth: Floats, points: Points, width_m: float) -> Floats:
@@ -235,21 +220,8 @@ def _depth_window(row_depth: Floats, points: Points, width_m: float) -> Floats:
     """
     gap = (row_depth[:, None] - points.depth) / width_m
     window: Floats = (1.0 + gap**2) ** -2
-    per_boring = window @ _one_hot(points.boring, int(points.boring.max(initial=0)) + 1)
-    # A boring with many samples at a depth must not outvote one with few; far above or below, it fades as they do.
+    per_boring = window @ _one_hot(points.boring)
+    # A boring with many points at a depth must not outvote one with few; far above or below, it fades as they do.
     crowd = np.maximum(per_boring[:, points.boring], 1.0)
-    return window / crowd
-
-
-def _domain_prior(points: Points, width_m: float, row_depth: Floats, count: int) -> Floats:
-    """Return how common each domain is at each depth, shape (depths, domains); rows add to 1."""
-    common = _depth_window(row_depth, points, width_m) @ _one_hot(points.domain, count)
-    prior: Floats = common / common.sum(axis=1, keepdims=True)
-    return prior
-
-
-def _background(records: Points, row_depth: Floats, count: int) -> Floats:
-    """Return the share of each record in the background of its domain at each depth, shape (depths, records)."""
-    window = _depth_window(row_depth, records, BACKGROUND_DEPTH_M)
-    in_domain = window @ _one_hot(records.domain, count)
-    return window / np.maximum(in_domain[:, records.domain], np.finfo(float).tiny)
+    fair: Floats = window / crowd
+    return fair

@@ -1,7 +1,8 @@
-"""Soil records of a corridor: one for each specimen, and one for each logged layer that nobody sampled.
+"""Soil records of a corridor: one for each specimen, and one for each logged layer.
 
-A record that comes from the log alone carries its visual group, origin and unit; so peat, topsoil and made ground,
-which are seldom tested, still count.
+What a hole logs as one layer is one soil until a sample says otherwise: the samples of a layer speak for all of its
+depth, each for the part nearest to it, and a layer without samples speaks for itself with its visual group. So peat,
+topsoil and made ground, which are seldom tested, still count, and a hole is never contradicted by distant ones.
 """
 
 from __future__ import annotations
@@ -10,45 +11,39 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-UNKNOWN_DOMAIN = ""
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+UNKNOWN_DOMAIN = "|"
 
 
-def covering_stratum(samples: pd.DataFrame, strata: pd.DataFrame) -> NDArray[np.int64]:
-    """Return for each sample the position of the stratum that holds its middle depth, or -1.
-
-    Parameters
-    ----------
-    samples
-        ``boring``, ``top_depth_m``, ``base_depth_m`` [m]; a missing base is taken as the top.
-    strata
-        ``boring``, ``top_depth_m``, ``base_depth_m`` [m]. Where two overlap, the one that begins deeper.
-    """
-    found = np.full(len(samples), -1, dtype=np.int64)
-    if not len(strata) or not len(samples):
-        return found
-    left = pd.DataFrame(
-        {"boring": samples["boring"].to_numpy(), "depth": middle_depth(samples), "at": range(len(samples))}
-    )
-    right = pd.DataFrame(
-        {
-            "boring": strata["boring"].to_numpy(),
-            "depth": strata["top_depth_m"].to_numpy(),
-            "base": strata["base_depth_m"].to_numpy(),
-            "stratum": range(len(strata)),
-        }
-    )
-    left, right = (t.dropna(subset=["boring", "depth"]).sort_values("depth", kind="stable") for t in (left, right))
-    joined = pd.merge_asof(left, right, on="depth", by="boring")
-    inside = joined[joined["depth"] <= joined["base"]]
-    found[inside["at"].to_numpy(int)] = inside["stratum"].to_numpy(int)
-    return found
-
-
-def middle_depth(table: pd.DataFrame) -> NDArray[np.float64]:
+def middle_depth(table: pd.DataFrame) -> Floats:
     """Return the middle depth of each row [m]; a missing base is taken as the top."""
     top = table["top_depth_m"].to_numpy(float)
     base = table["base_depth_m"].to_numpy(float)
     return (top + np.where(np.isnan(base), top, base)) / 2
+
+
+def covering(boring: pd.Series, depth: Floats, intervals: pd.DataFrame) -> Ints:
+    """Return for each place the position of the interval that holds it, or -1; of several, the one that begins deepest.
+
+    Parameters
+    ----------
+    boring, depth
+        Name of the boring, and depth [m], of each place.
+    intervals
+        ``boring``, ``top_depth_m``, ``base_depth_m`` [m].
+    """
+    found = np.full(len(depth), -1, dtype=np.int64)
+    if not len(intervals) or not len(depth):
+        return found
+    places = pd.DataFrame({"boring": boring.to_numpy(), "depth": depth, "place": np.arange(len(depth))})
+    held = intervals[["boring", "top_depth_m", "base_depth_m"]].assign(interval=np.arange(len(intervals)))
+    pairs = places.merge(held, on="boring").sort_values(["place", "top_depth_m", "interval"], kind="stable")
+    pairs = pairs[(pairs["depth"] >= pairs["top_depth_m"]) & (pairs["depth"] <= pairs["base_depth_m"])]
+    last = pairs.drop_duplicates("place", keep="last")
+    found[last["place"].to_numpy(int)] = last["interval"].to_numpy(int)
+    return found
 
 
 def with_log(samples: pd.DataFrame, strata: pd.DataFrame) -> pd.DataFrame:
@@ -62,18 +57,16 @@ def with_log(samples: pd.DataFrame, strata: pd.DataFrame) -> pd.DataFrame:
     result = samples.copy()
     if not len(strata):
         return result
-    stratum = covering_stratum(samples, strata)
+    stratum = covering(samples["boring"], middle_depth(samples), strata)
     for name in ("visual_group", "origin", "unit"):
         taken = strata[name].reset_index(drop=True).reindex(stratum).set_axis(samples.index)
         result[name] = result[name].where(result[name].notna(), taken)
     return result
 
 
-def bare_layers(samples: pd.DataFrame, strata: pd.DataFrame) -> pd.DataFrame:
-    """Return the logged layers in which there is no sample, in the columns of `samples`; their index follows on."""
-    bare = strata.iloc[np.setdiff1d(np.arange(len(strata)), covering_stratum(samples, strata))]
-    first = int(samples.index.max()) + 1 if len(samples) else 0
-    return bare.reindex(columns=samples.columns).set_axis(pd.RangeIndex(first, first + len(bare)))
+def layer_rows(strata: pd.DataFrame, samples: pd.DataFrame, first: int) -> pd.DataFrame:
+    """Return the logged layers in the columns of `samples`, their index counting from `first`."""
+    return strata.reindex(columns=samples.columns).set_axis(pd.RangeIndex(first, first + len(strata)))
 
 
 def one_per_specimen(soils: pd.DataFrame) -> pd.DataFrame:
@@ -82,27 +75,24 @@ def one_per_specimen(soils: pd.DataFrame) -> pd.DataFrame:
     Parameters
     ----------
     soils
-        ``specimen``, ``top_depth_m``, ``base_depth_m`` and anything else.
+        ``specimen``, ``top_depth_m``, ``base_depth_m`` and anything else that all rows of a specimen share.
     """
-    groups = soils.groupby("specimen", sort=False)
-    base = soils["base_depth_m"].fillna(soils["top_depth_m"]).groupby(soils["specimen"]).transform("max")
-    whole = soils.assign(top_depth_m=groups["top_depth_m"].transform("min"), base_depth_m=base)
+    base = soils["base_depth_m"].fillna(soils["top_depth_m"])
+    top = soils["top_depth_m"].groupby(soils["specimen"], sort=False).transform("min")
+    whole = soils.assign(top_depth_m=top, base_depth_m=base.groupby(soils["specimen"], sort=False).transform("max"))
     return whole.loc[~soils["specimen"].duplicated()]
 
 
 def domains(soils: pd.DataFrame) -> pd.Series:
-    """Return the domain of each row: origin and unit joined, the same text for soils that may vote for each other."""
-    origin = soils["origin"].fillna("").astype("string")
-    unit = soils["unit"].fillna("").astype("string")
-    joined = origin + "|" + unit
-    return joined.where(joined != "|", UNKNOWN_DOMAIN)
+    """Return the domain of each row: origin and unit as one text, the same for soils that may vote for each other."""
+    parts = [soils[name].fillna("").astype("string").str.strip().str.casefold() for name in ("origin", "unit")]
+    return parts[0] + "|" + parts[1]
 
 
-def voters(domain: pd.Series, has_answer: NDArray[np.bool_]) -> NDArray[np.bool_]:
-    """Return which records vote: those with a group or a verdict, and all records of a domain that has neither.
-
-    A record without any answer would only dilute the others; where a domain has nothing else, it stands for the
-    domain, and the answer there is "not determined".
-    """
-    answered = pd.Series(has_answer, index=domain.index)
-    return (answered | ~answered.groupby(domain).transform("any")).to_numpy(bool)
+def agree(one: pd.Series, other: pd.Series) -> NDArray[np.bool_]:
+    """Return whether two domains, row by row, can be one: what both state is the same."""
+    result = np.ones(len(one), dtype=bool)
+    for part in (0, 1):
+        a, b = (side.str.split("|", n=1).str[part].to_numpy(object) for side in (one, other))
+        result &= (a == b) | (a == "") | (b == "")
+    return result

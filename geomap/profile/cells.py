@@ -16,6 +16,8 @@ from geomap.profile.verdicts import Scale, suitability
 Floats = NDArray[np.float64]
 
 LEAST_ODDS = 0.005  # symbols less likely need not be listed
+SLIVER = 0.01  # of a step
+ROUNDING_M = 1e-9  # levels are differences of numbers such as 0.1
 BELOW_ZONE_M = 1.0  # design, section 5: the profile reaches this far below the design zone
 
 
@@ -79,21 +81,42 @@ class Sheet:
         return self.levels.ground - self.levels.formation
 
     @property
+    def zone_top(self) -> Floats:
+        """Depth of the top of the natural part of the design zone [m]; the ground where there is no formation."""
+        return np.maximum(np.nan_to_num(self.formation_depth), 0.0)
+
+    @property
+    def zone_base(self) -> Floats:
+        """Depth of the base of the design zone [m]; above the ground where the zone is all fill."""
+        return np.nan_to_num(self.formation_depth) + self.zone_depth
+
+    @property
     def in_zone(self) -> NDArray[np.bool_]:
-        """Which cells have their middle in the design zone; without a formation, the zone starts at the ground."""
-        top = np.nan_to_num(self.formation_depth)[:, None]
-        return (self.depths >= top) & (self.depths < top + self.zone_depth)
+        """Which cells belong to the design zone in natural ground.
+
+        Those of which the zone takes half or more, and always the one that it takes most of, unless less than half
+        a thickness of the zone is natural.
+        """
+        top, base = self.zone_top[:, None], self.zone_base[:, None]
+        part = np.minimum(base, self.tops + self.thickness) - np.maximum(top, self.tops)
+        half = self.thickness / 2 - ROUNDING_M
+        # The first of those that it takes most of, so that a zone thinner than a cell still has one.
+        first = np.arange(len(self.tops)) == part.argmax(axis=1)[:, None]
+        result: NDArray[np.bool_] = ((part >= half) | first) & (base - top >= half) & self.is_used
+        return result
 
 
 def step_edges(length_m: float, step_m: float) -> Floats:
     """Return the borders of the steps [m]; the last step is shorter where the length is not a multiple.
+
+    A rest of less than a hundredth of a step is added to the last one.
 
     Examples
     --------
     >>> step_edges(25.0, 10.0).tolist()
     [0.0, 10.0, 20.0, 25.0]
     """
-    count = max(1, int(np.ceil(length_m / step_m - 1e-9)))
+    count = max(1, int(np.ceil(length_m / step_m - SLIVER)))
     return np.append(np.arange(count) * step_m, length_m)
 
 
@@ -157,7 +180,8 @@ def entropy(probability: Floats) -> Floats:
         return np.zeros(len(probability))
     with np.errstate(divide="ignore", invalid="ignore"):
         terms = np.where(probability > 0, -probability * np.log(probability), 0.0)
-    return terms.sum(axis=1) / np.log(classes)  # type: ignore[no-any-return]
+    result: Floats = np.minimum(terms.sum(axis=1) / np.log(classes), 1.0)
+    return result
 
 
 def cell_table(

@@ -12,9 +12,11 @@ from scipy import sparse
 
 from geomap.profile import subgrade
 from geomap.profile.cells import Sheet
-from geomap.profile.verdicts import Scale, governing_rule
+from geomap.profile.verdicts import Scale, governing_rule, shares
 
 Floats = NDArray[np.float64]
+
+HALF = 0.5  # of the draws: from here on the fill is what decides a mixed step
 
 
 @dataclass(frozen=True)
@@ -44,7 +46,7 @@ class Judged:
 
 @dataclass(frozen=True)
 class Fill:
-    """What the corridor file says of imported material: its group or a blank, verdict code, and the rule or reason."""
+    """Imported material: its group in the leading system or a blank, its verdict code, and the rule or reason."""
 
     group: str
     verdict: int
@@ -61,7 +63,7 @@ def step_table(
     sheet, judged
         The cells and what is known about them.
     draws
-        Verdict codes of the natural part of the design zone, shape (steps, realizations).
+        Verdict codes of the design zone, fill counted in, shape (steps, realizations).
     fill
         Imported material.
     holes
@@ -71,8 +73,7 @@ def step_table(
     """
     zone = subgrade.natural_zone(sheet)
     material = subgrade.subgrade_material(sheet)
-    unknown = scale.column("not assessed")
-    probability = subgrade.verdict_shares(draws, material, fill.verdict, unknown, scale)
+    probability = shares(draws, len(scale.words))
     groups = {system: (zone.mean(odds), symbols) for system, (odds, symbols) in judged.odds.items()}
     table = subgrade.subgrade_table(sheet, zone, material, groups, probability, scale)
     table["evidence"] = subgrade.zone_evidence(judged.evidence, zone)
@@ -80,19 +81,30 @@ def step_table(
         table["nearest_boring"], table["nearest_boring_m"] = subgrade.nearest_hole(sheet.centers, holes)
     counted = zone.mean_weights(judged.weights) >= subgrade.LEAST_WEIGHT
     table["samples_used"] = np.asarray(counted.sum(axis=1)).ravel()
-    names, verdict_of_rule, shares = judged.rules
-    behind = np.nan_to_num(zone.mean(shares))
+    names, verdict_of_rule, of_rules = judged.rules
+    behind = np.nan_to_num(zone.mean(of_rules))
     table["rule"] = governing_rule(names, verdict_of_rule, behind, table["suitability"].to_numpy(object), scale)
-    return _with_fill(table, fill)
+    table = _with_reason(table, scale)
+    governs = (draws == fill.verdict).mean(axis=1) >= HALF
+    return _with_fill(table, fill, governs & (fill.verdict != scale.worst_first[-1]))
 
 
-def _with_fill(table: pd.DataFrame, fill: Fill) -> pd.DataFrame:
-    """Say of each step in embankment what the fill is, and of each without formation that it is not judged."""
+def _with_reason(table: pd.DataFrame, scale: Scale) -> pd.DataFrame:
+    """Call no step suitable, or anything else, without data; and say why a mostly suitable step is not called so."""
+    blank = (table["evidence"] == "no data") & table["subgrade_material"].isin([subgrade.NATURAL, subgrade.MIXED])
+    doubted = (table["suitability"] == "treat") & (table["p_treat"] < table["p_suitable"])
+    allowed = f" where {scale.suitable_p_unsuitable:g} is allowed, most of it by "
+    why = "p_unsuitable " + table["p_unsuitable"].map("{:.2f}".format) + allowed + table["rule"].astype(str)
+    table["rule"] = table["rule"].mask(doubted, why).mask(blank, subgrade.NO_DATA)
+    table["suitability"] = table["suitability"].mask(blank, "not assessed")
+    return table
+
+
+def _with_fill(table: pd.DataFrame, fill: Fill, governs: NDArray[np.bool_]) -> pd.DataFrame:
+    """Say of each step in embankment what the fill is, and of each without levels that it is not judged."""
     imported = table["subgrade_material"] == subgrade.IMPORTED
-    hidden = (
-        (table["subgrade_material"] == subgrade.MIXED) & (table["suitability"] == "not assessed") & (not fill.group)
-    )
-    table["rule"] = table["rule"].mask(imported | hidden, fill.rule)
+    by_fill = imported | ((table["subgrade_material"] == subgrade.MIXED) & governs)
+    table["rule"] = table["rule"].mask(by_fill, fill.rule)
     table["rule"] = table["rule"].mask(table["subgrade_material"].isna(), subgrade.NO_FORMATION)
     table["soil_group"] = table["soil_group"].mask(imported, fill.group or None)
     if "aashto_group" in table:

@@ -11,14 +11,15 @@ from numpy.typing import NDArray
 from scipy import sparse
 
 from geomap.profile.cells import Sheet
-from geomap.profile.verdicts import Scale, shares, suitability
+from geomap.profile.verdicts import Scale, suitability
 
 Floats = NDArray[np.float64]
 
 NATURAL, IMPORTED, MIXED = "natural", "imported", "mixed"
 LEAST_WEIGHT = 0.005  # records with a smaller mean weight in the zone are neither counted nor traced
 NO_CBR = "not estimated"
-NO_FORMATION = "not assessed: no formation given"
+NO_DATA = "not assessed: no boring bears on this stretch"
+NO_FORMATION = "not assessed: no formation or no ground level here"
 IMPORTED_FILL = "not assessed: imported fill"
 
 
@@ -46,30 +47,30 @@ class Zone:
 
 def natural_zone(sheet: Sheet) -> Zone:
     """Return the part of the design zone that lies in natural ground."""
-    in_zone = sheet.in_zone & sheet.is_used
+    in_zone = sheet.in_zone
     return Zone(in_zone.sum(axis=1), in_zone)
 
 
 def subgrade_material(sheet: Sheet) -> NDArray[np.object_]:
     """Return natural, imported or mixed for each step; missing where there is no formation.
 
-    Imported: the whole design zone lies in embankment fill. Mixed: part of it.
+    Imported: less than half a thickness of the design zone is natural. Natural: less than that is fill.
     """
     depth = sheet.formation_depth
     fill = np.clip(-np.nan_to_num(depth), 0, sheet.zone_depth)
     words = np.select(
-        [np.isnan(depth), fill < sheet.thickness / 2, fill > sheet.zone_depth - sheet.thickness / 2],
-        [np.array(w, dtype=object) for w in ("", NATURAL, IMPORTED)],
+        [np.isnan(depth), ~sheet.in_zone.any(axis=1), fill < sheet.thickness / 2],
+        [np.array(w, dtype=object) for w in ("", IMPORTED, NATURAL)],
         default=np.array(MIXED, dtype=object),
     )
     words[words == ""] = None
     return words
 
 
-def verdict_shares(
+def with_fill(
     draws: NDArray[np.int8], material: NDArray[np.object_], fill_verdict: int, not_assessed: int, scale: Scale
-) -> Floats:
-    """Return the share of each verdict for each step, with the imported part of the zone counted in.
+) -> NDArray[np.int8]:
+    """Return the draws with the imported part of the zone counted in.
 
     Where part of the zone is fill, the worse of the natural draw and the fill's verdict governs. A step without a
     formation is not assessed.
@@ -91,7 +92,7 @@ def verdict_shares(
     governed[worse] = fill_verdict
     governed[material == IMPORTED] = fill_verdict
     governed[pd.isna(material)] = not_assessed
-    return shares(governed, len(scale.words))
+    return governed
 
 
 def zone_evidence(evidence: NDArray[np.object_], zone: Zone) -> NDArray[np.object_]:
@@ -162,22 +163,28 @@ def _likeliest(groups: tuple[Floats, Sequence[str]], zone: Zone) -> tuple[NDArra
     return names, np.where(zone.counts == 0, np.nan, share)
 
 
-def trace_table(mean_weights: sparse.csr_array, records: pd.DataFrame) -> pd.DataFrame:
-    """Return the layer ``trace``: the records behind each step, greatest weight first.
+def trace_table(mean_weights: sparse.csr_array, specimens: NDArray[np.int64], rows: pd.DataFrame) -> pd.DataFrame:
+    """Return the layer ``trace``: the rows behind each step, greatest weight first.
+
+    A specimen of several rows (a gradation from one sheet, limits from another) is traced to all of them; each row
+    then carries the weight of the specimen.
 
     Parameters
     ----------
     mean_weights
-        Sparse array, shape (steps, records): weight averaged over the cells of the zone.
-    records
-        The records, with the columns of the layer.
+        Shape (steps, records): weight averaged over the cells of the zone.
+    specimens
+        Number of the specimen of each record.
+    rows
+        Every soil row with ``specimen`` and the columns of the layer.
     """
     matrix = mean_weights.tocoo()
     keep = matrix.data >= LEAST_WEIGHT
     step, record, weight = matrix.row[keep], matrix.col[keep], matrix.data[keep]
-    order = np.lexsort((-weight, step))
-    step, record, weight = step[order], record[order], weight[order]
+    order = np.lexsort((record, -weight, step))
+    table = pd.DataFrame({"step": step[order] + 1, "specimen": specimens[record[order]], "weight": weight[order]})
     columns = ["boring", "sample", "top_depth_m", "base_depth_m", "lab_sheet", "file", "sheet", "row_number"]
-    table = records.iloc[record][columns].reset_index(drop=True)
-    table.insert(0, "step", step + 1)
-    return table.assign(weight=np.round(weight, 4))
+    traced = table.assign(weight=np.round(table["weight"], 4)).merge(
+        rows[["specimen", *columns]], on="specimen", how="left"
+    )
+    return traced.sort_values("step", kind="stable").reset_index(drop=True)

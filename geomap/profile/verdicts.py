@@ -13,17 +13,33 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 
-UNSUITABLE_FROM = 0.5  # design, section 7
-SUITABLE_P_UNSUITABLE = 0.1  # design, section 7
-SUITABLE_P_NOT_ASSESSED = 0.2  # design, section 7
-
 
 @dataclass(frozen=True)
 class Scale:
-    """The verdicts: their words in the order of their codes, and their codes from the worst to the best."""
+    """The verdicts: their words in the order of their codes, their codes from the worst to the best, and limits.
+
+    Attributes
+    ----------
+    unsuitable_from
+        Probability of unsuitable from which a place is called so.
+    suitable_p_unsuitable, suitable_p_not_assessed
+        Probabilities of unsuitable and of not assessed that a suitable place must stay below.
+    """
 
     words: tuple[str, ...]
     worst_first: tuple[int, ...]
+    unsuitable_from: float = 0.5
+    suitable_p_unsuitable: float = 0.1
+    suitable_p_not_assessed: float = 0.2
+
+    @property
+    def in_words(self) -> str:
+        """The limits in a sentence."""
+        return (
+            f"unsuitable from probability {self.unsuitable_from:g}; suitable only where unsuitable is below "
+            f"{self.suitable_p_unsuitable:g} and not assessed below {self.suitable_p_not_assessed:g}; "
+            "otherwise treat or not assessed, the likelier; not assessed where there is no data"
+        )
 
     def column(self, word: str) -> int:
         """Return the code of a word."""
@@ -40,8 +56,9 @@ class Scale:
 def suitability(probability: Floats, scale: Scale) -> NDArray[np.object_]:
     """Return the verdict in a word for each row of probabilities.
 
-    Unsuitable at a probability of unsuitable of 0.5 or more. Suitable only where unsuitable is below 0.1, not
-    assessed below 0.2, and suitable at least as likely as treat. Otherwise treat or not assessed, the likelier.
+    With the usual limits: unsuitable at a probability of unsuitable of 0.5 or more. Suitable only where unsuitable
+    is below 0.1, not assessed below 0.2, and suitable at least as likely as treat. Otherwise treat or not
+    assessed, the likelier.
 
     Parameters
     ----------
@@ -53,9 +70,10 @@ def suitability(probability: Floats, scale: Scale) -> NDArray[np.object_]:
     suitable, treat, unsuitable, unknown = (
         probability[:, scale.column(w)] for w in ("suitable", "treat", "unsuitable", "not assessed")
     )
-    is_suitable = (unsuitable < SUITABLE_P_UNSUITABLE) & (unknown < SUITABLE_P_NOT_ASSESSED) & (suitable >= treat)
+    is_sure = (unsuitable < scale.suitable_p_unsuitable) & (unknown < scale.suitable_p_not_assessed)
+    is_suitable = is_sure & (suitable >= treat)
     words: NDArray[np.object_] = np.select(
-        [unsuitable >= UNSUITABLE_FROM, is_suitable, treat >= unknown],
+        [unsuitable >= scale.unsuitable_from, is_suitable, treat >= unknown],
         [np.array(w, dtype=object) for w in ("unsuitable", "suitable", "treat")],
         default=np.array("not assessed", dtype=object),
     )
@@ -111,7 +129,8 @@ def governing_rule(
     """Return for each step the rule behind its verdict.
 
     Of the rules that give this verdict or a worse one, it is the one with the greatest share of the soil: a step may
-    come out as "treat" because too much of it may be unsuitable, and then the rule that says so is named.
+    come out as "treat" because too much of it may be unsuitable, and then the rule that says so is named. For the
+    best verdict only the rules that give it count.
 
     Parameters
     ----------
@@ -127,6 +146,7 @@ def governing_rule(
     rank = dict(zip(scale.words, scale.rank.tolist(), strict=True))
     of_rule = np.array([rank[word] for word in rule_verdict])
     of_step = np.array([rank[word] for word in verdict])
-    bad_enough = (of_rule <= of_step[:, None]) & (membership > 0)
+    best = of_step[:, None] == scale.rank.max()
+    bad_enough = np.where(best, of_rule == of_step[:, None], of_rule <= of_step[:, None]) & (membership > 0)
     chosen: NDArray[np.object_] = np.array(rules, dtype=object)[(membership + bad_enough).argmax(axis=1)]
     return chosen

@@ -11,6 +11,7 @@ import json
 from collections.abc import Sequence
 
 import numpy as np
+from scipy import sparse
 import pandas as pd
 import shapely
 from numpy.typing import NDArray
@@ -445,5 +446,6 @@ def sample_results(name: str = "Otter Brook bypass", first: str = "BH-1", length
             "counts": pd.DataFrame(counts),
         },
         legend=legend_table(),
+        weights=sparse.csr_array((1, 1)),
         draws=draws(),
     )

@@ -12,6 +12,7 @@ import numpy as np
 import pandas as pd
 import shapely
 from numpy.typing import NDArray
+from scipy import sparse
 
 from geomap.results import Results
 from geomap.tables import schema
@@ -367,6 +368,7 @@ def large_results(size: Size | None = None, name: str = "Stand Heath link") -> R
         tables={**tables, **extra},
         legend=legend_table(),
         draws=np.zeros((size.steps, 0), dtype=np.int8),
+        weights=sparse.csr_array((size.steps * size.thicknesses, 0)),
     )
 
 

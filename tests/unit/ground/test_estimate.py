@@ -54,21 +54,101 @@ def test_far_from_every_boring_the_shares_are_those_of_the_site() -> None:
     assert (evidence[-1] == "no data").all()
 
 
+def shares(soils: pd.DataFrame, layers: pd.DataFrame, answered: list[bool] | None = None) -> np.ndarray:
+    """Shares by step, row and record: the specimens first, then the layers, those that never speak with 0."""
+    told = np.ones(len(soils), bool) if answered is None else np.array(answered)
+    result = estimate(soils, layers, told, grid(), Ranges())
+    every = pd.concat([soils, layers])
+    names = [f"{r.boring} {r.top_depth_m:g} {r.origin} {r.unit}" for r in every.itertuples()]
+    spoken = [f"{r.boring} {r.top_depth_m:g} {r.origin} {r.unit}" for r in result.records.itertuples()]
+    membership = np.array([[name == one for name in names] for one in spoken], dtype=float)
+    return result.ensemble.tally(membership).reshape(*grid().shape, len(every))
+
+
 def test_a_soil_never_votes_where_the_log_names_another_origin() -> None:
     soils = soils_table([("A", 105.0, 0.0, 1.0, "made ground", ""), ("A", 105.0, 2.0, 3.0, "natural", "clay")])
     layers = soils_table([("A", 105.0, 0.0, 1.5, "made ground", ""), ("A", 105.0, 1.5, 4.0, "natural", "clay")])
-    result = estimate(soils, layers, np.ones(2, bool), grid(), Ranges())
-    shares = result.ensemble.tally(np.eye(2)).reshape(*grid().shape, 2)
-    assert (shares[10, :3, 0] > 0.99).all()  # logged as made ground down to 1.5 m: the clay has no vote
-    assert (shares[10, 3:, 1] > 0.99).all()  # and the made ground none below it, close as it is
+    at_hole = shares(soils, layers)[10]
+    assert (at_hole[:3, 0] > 0.99).all()  # logged as made ground down to 1.5 m: the clay has no vote
+    assert (at_hole[3:, 1] > 0.99).all()  # and the made ground none below it, close as it is
 
 
-def test_a_soil_of_unknown_origin_takes_that_of_the_nearest_logged_layer() -> None:
-    soils = soils_table([("A", 105.0, 0.0, 1.0, "", ""), ("A", 105.0, 2.0, 3.0, "natural", "clay")])
+def test_a_layer_without_a_sample_speaks_over_its_whole_depth_and_distant_holes_do_not_contradict_it() -> None:
+    layers = soils_table(
+        [
+            ("A", 305.0, 0.0, 4.0, "natural", ""),
+            ("B", 5.0, 0.0, 4.0, "natural", ""),
+            ("C", 595.0, 0.0, 4.0, "natural", ""),
+        ]
+    )
+    at_hole = shares(NO_LAYERS, layers)[30]
+    assert (at_hole[:, 0] > 0.9).all()
+
+
+def test_the_one_sample_of_a_layer_speaks_for_all_of_it() -> None:
+    soils = soils_table([("A", 305.0, 0.5, 1.0, "natural", "clay"), ("B", 5.0, 0.5, 4.0, "natural", "clay")])
+    layers = soils_table([("A", 305.0, 0.0, 4.0, "natural", "clay"), ("B", 5.0, 0.0, 4.0, "natural", "clay")])
+    assert (shares(soils, layers)[30, :, 0] > 0.9).all()
+
+
+def test_a_sample_that_nobody_could_classify_keeps_its_own_depth_and_no_distant_soil_answers_for_it() -> None:
+    soils = soils_table([("A", 305.0, 0.0, 4.0, "", ""), ("B", 5.0, 0.0, 4.0, "", "")])
+    assert (shares(soils, NO_LAYERS, [False, True])[30, :, 0] > 0.9).all()
+
+
+def test_in_a_layer_the_rest_goes_to_the_sample_that_has_an_answer() -> None:
+    soils = soils_table([("A", 305.0, 0.5, 1.0, "natural", "clay"), ("A", 305.0, 2.0, 2.5, "natural", "clay")])
+    layers = soils_table([("A", 305.0, 0.0, 4.0, "natural", "clay")])
+    at_hole = shares(soils, layers, [True, False])[30]
+    assert at_hole[4, 1] > 0.8  # its own depth, 2.0 to 2.5 m
+    assert at_hole[6:, 0].min() > 0.5  # below it the layer is what the classified sample says
+
+
+def test_a_unit_that_only_the_samples_name_is_one_with_the_layer_that_holds_them() -> None:
+    soils = soils_table([("A", 105.0, 1.0, 2.0, "natural", "sand"), ("B", 115.0, 0.0, 0.5, "made ground", "")])
+    layers = soils_table([("A", 105.0, 0.0, 4.0, "natural", ""), ("B", 115.0, 0.0, 0.5, "made ground", "")])
+    assert (shares(soils, layers)[10, 1:, 0] > 0.9).all()
+
+
+def test_a_boring_without_a_log_keeps_its_own_soils() -> None:
+    soils = soils_table([("A", 105.0, 0.0, 4.0, "natural", "sand"), ("B", 145.0, 0.0, 4.0, "natural", "clay")])
+    layers = soils_table([("B", 145.0, 0.0, 4.0, "natural", "clay")])
+    assert (shares(soils, layers)[10, :, 0] > 0.9).all()
+
+
+def test_a_sample_of_another_origin_than_its_layer_speaks_for_itself_only() -> None:
+    soils = soils_table([("A", 105.0, 1.0, 2.0, "made ground", "")])
+    layers = soils_table([("A", 105.0, 0.0, 4.0, "natural", "")])
+    at_hole = shares(soils, layers)[10]
+    assert (at_hole[2:4, 0] > 0.9).all()
+    assert (at_hole[5:, 1] > 0.9).all()
+
+
+def test_units_spelled_with_other_capitals_are_one() -> None:
+    table = soils_table([("A", 0.0, 0, 1, "natural", "Alluvium "), ("A", 0.0, 0, 1, "natural", "alluvium")])
+    assert records.domains(table).nunique() == 1
+
+
+def test_a_soil_of_unknown_origin_takes_that_of_the_nearest_point_that_has_one() -> None:
+    soils = soils_table([("B", 115.0, 0.0, 1.0, "", ""), ("A", 105.0, 2.0, 3.0, "natural", "clay")])
     layers = soils_table([("A", 105.0, 0.0, 1.5, "made ground", ""), ("A", 105.0, 1.5, 4.0, "natural", "clay")])
     result = estimate(soils, layers, np.ones(2, bool), grid(), Ranges())
-    shares = result.ensemble.tally(np.eye(2)).reshape(*grid().shape, 2)
-    assert (shares[10, :3, 0] > 0.99).all()
+    of_record = dict(
+        zip(result.records["boring"] + result.records["origin"], result.ensemble.record_domain, strict=True)
+    )
+    assert of_record["B"] == of_record["Amade ground"]
+
+
+def test_nested_layers_the_one_that_begins_deeper_holds_the_place() -> None:
+    layers = soils_table([("A", 0.0, 0.0, 5.0, "", ""), ("A", 0.0, 1.0, 2.0, "", "")])
+    boring = pd.Series(["A", "A", "A", "B"])
+    assert records.covering(boring, np.array([0.5, 1.5, 3.0, 1.0]), layers).tolist() == [0, 1, 0, -1]
+
+
+def test_a_layer_without_thickness_says_nothing() -> None:
+    soils = soils_table([("A", 105.0, 0.0, 4.0, "natural", "")])
+    flat = soils_table([("A", 105.0, 2.0, 2.0, "natural", "")])
+    assert len(estimate(soils, flat, np.ones(1, bool), grid(), Ranges()).records) == 1
 
 
 def test_evidence_is_observed_only_beside_a_hole_and_at_the_depths_it_covers() -> None:
@@ -91,9 +171,10 @@ def test_a_hole_off_the_formation_does_not_observe_it() -> None:
     assert "observed" not in estimate(soils, NO_LAYERS, np.ones(1, bool), grid(), Ranges()).evidence
 
 
-def test_a_record_without_answer_does_not_vote_unless_its_domain_has_no_other() -> None:
-    domain = pd.Series(["clay", "clay", "rock"])
-    assert records.voters(domain, np.array([True, False, False])).tolist() == [True, False, True]
+def test_a_short_sample_and_one_without_base_show_the_cell_they_lie_in() -> None:
+    soils = soils_table([("A", 105.0, 1.0, 1.2, "", ""), ("A", 105.0, 2.75, np.nan, "", "")])
+    evidence = estimate(soils, NO_LAYERS, np.ones(2, bool), grid(), Ranges()).evidence.reshape(grid().shape)
+    assert np.flatnonzero(evidence[10] == "observed").tolist() == [2, 5]
 
 
 def test_no_soil_at_all_is_refused() -> None:
@@ -119,15 +200,15 @@ def test_the_nearest_records_give_what_all_of_them_give(monkeypatch: pytest.Monk
     assert np.abs(everything - nearest).max() < 0.02
 
 
-def test_layers_without_a_sample_become_records_and_samples_take_what_the_log_says() -> None:
+def test_samples_take_what_the_log_says_where_they_say_nothing() -> None:
     samples = soils_table([("A", 0.0, 1.0, 1.5, "", "")]).assign(visual_group=None, origin=None, unit=None)
     strata = soils_table([("A", 0.0, 0.0, 0.3, "topsoil", ""), ("A", 0.0, 0.3, 3.0, "natural", "clay")])
     strata = strata.assign(visual_group=["OL", "CL"])
     told = records.with_log(samples, strata)
     assert told[["visual_group", "origin", "unit"]].values.tolist() == [["CL", "natural", "clay"]]
-    bare = records.bare_layers(samples, strata)
-    assert bare[["visual_group", "origin", "top_depth_m"]].values.tolist() == [["OL", "topsoil", 0.0]]
-    assert bare.index.tolist() == [1]
+    rows = records.layer_rows(strata, samples, first=7)
+    assert rows.index.tolist() == [7, 8]
+    assert rows["visual_group"].tolist() == ["OL", "CL"]
 
 
 @settings(max_examples=25, deadline=None)

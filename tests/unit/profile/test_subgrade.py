@@ -12,7 +12,7 @@ from hypothesis.extra import numpy as hnp
 
 from geomap.profile import subgrade
 from geomap.profile.cells import Levels, cell_table, entropy, odds_text, sheet, step_edges
-from geomap.profile.verdicts import Scale, shares, suitability, zone_draws
+from geomap.profile.verdicts import Scale, governing_rule, shares, suitability, zone_draws
 
 SCALE = Scale(("suitable", "treat", "unsuitable", "not assessed"), (2, 3, 1, 0))
 
@@ -26,8 +26,8 @@ def test_steps_tile_the_alignment(length: float, step: float) -> None:
     edges = step_edges(length, step)
     assert edges[0] == 0
     assert edges[-1] == length
-    assert (np.diff(edges) > 0).all()
-    assert np.diff(edges).max() <= step * (1 + 1e-9)
+    assert np.diff(edges).min() >= min(length, 0.0099 * step)
+    assert np.diff(edges).max() <= step * 1.011
 
 
 def test_the_profile_reaches_one_meter_below_the_design_zone_in_a_cut() -> None:
@@ -53,6 +53,26 @@ def test_without_a_formation_the_zone_starts_at_the_ground_and_there_is_no_mater
     page = sheet(step_edges(10, 10), levels([10], [np.nan]), 0.25, 6.0, 1.0)
     assert np.flatnonzero(page.in_zone[0]).tolist() == [0, 1, 2, 3]
     assert subgrade.subgrade_material(page).tolist() == [None]
+
+
+def test_the_design_zone_takes_cells_of_which_it_takes_half_and_always_one() -> None:
+    thick = sheet(step_edges(30, 10), levels([10, 10, 10], [10, 9.2, 9.4]), 1.0, 6.0, 1.0)
+    assert [np.flatnonzero(row).tolist() for row in thick.in_zone] == [[0], [1], [1]]
+    assert subgrade.subgrade_material(thick).tolist() == ["natural"] * 3
+
+
+def test_a_zone_with_next_to_no_natural_ground_is_imported() -> None:
+    page = sheet(step_edges(20, 10), levels([10, 10], [10.875, 10.876]), 0.25, 6.0, 1.0)
+    assert subgrade.subgrade_material(page).tolist() == ["mixed", "imported"]
+    assert page.in_zone.sum(axis=1).tolist() == [1, 0]
+
+
+def test_the_rule_named_gives_the_verdict_or_is_the_reason_why_it_is_no_better() -> None:
+    rules = ["SP ok", "SM ok", "CH treat", "PT out"]
+    gives = ["suitable", "suitable", "treat", "unsuitable"]
+    membership = np.array([[0.4, 0.35, 0.25, 0.0], [0.5, 0.2, 0.1, 0.2], [0.1, 0.1, 0.2, 0.6]])
+    verdict = np.array(["suitable", "treat", "unsuitable"], dtype=object)
+    assert governing_rule(rules, gives, membership, verdict, SCALE).tolist() == ["SP ok", "PT out", "PT out"]
 
 
 VERDICTS = [
@@ -94,9 +114,9 @@ def test_cells_that_share_a_field_turn_bad_together_and_independent_ones_do_not(
 def test_fill_that_is_not_assessed_hides_a_good_natural_part_but_not_a_bad_one() -> None:
     draws = np.array([[0, 2]] * 4, dtype=np.int8)  # suitable once, unsuitable once
     material = np.array(["natural", "mixed", "imported", None], dtype=object)
-    probability = subgrade.verdict_shares(draws, material, 3, 3, SCALE)
+    probability = shares(subgrade.with_fill(draws, material, 3, 3, SCALE), 4)
     assert probability.tolist() == [[0.5, 0, 0.5, 0], [0, 0, 0.5, 0.5], [0, 0, 0, 1], [0, 0, 0, 1]]
-    probability = subgrade.verdict_shares(draws, material, 0, 3, SCALE)
+    probability = shares(subgrade.with_fill(draws, material, 0, 3, SCALE), 4)
     assert probability.tolist() == [[0.5, 0, 0.5, 0], [0.5, 0, 0.5, 0], [1, 0, 0, 0], [0, 0, 0, 1]]
 
 

@@ -6,7 +6,8 @@ A condition is a comparison of columns with numbers and texts, joined by ``and``
 
 A comparison with a missing value is neither true nor false but unknown, and ``and``, ``or``, ``not`` carry that on
 as Kleene's strong logic does: false and unknown is false, true or unknown is true. (Kleene 1952, Introduction to
-Metamathematics, section 64; from memory.)
+Metamathematics, section 64; from memory.) A value reported as less or more than a number, which its column
+``<name>_bound`` tells, is compared as far as that decides.
 """
 
 from __future__ import annotations
@@ -215,9 +216,25 @@ def _compare(node: ast.expr, table: Mapping[str, Any], rows: int) -> Truth:
     known = values.notna().to_numpy()
     wanted = ast.literal_eval(node.comparators[0])
     operator = node.ops[0]
+    if f"{node.left.id}_bound" in table:
+        values, is_decided = _within(values, table[f"{node.left.id}_bound"], wanted)
+        known = known & is_decided  # what pandas hands out may be read-only
     met = np.zeros(rows, bool)
     if isinstance(operator, ast.In | ast.NotIn):
         met[known] = values[known].isin(wanted).to_numpy() ^ isinstance(operator, ast.NotIn)
     else:
         met[known] = np.asarray(_COMPARISONS[type(operator)](values[known].to_numpy(), wanted), dtype=bool)
     return Truth(met, known & ~met)
+
+
+def _within(values: pd.Series[Any], bound: Any, wanted: Any) -> tuple[pd.Series[Any], NDArray[np.bool_]]:
+    """Return numbers that stand for values reported as less or more than, and whether the bound decides.
+
+    Of "<5" it is known that it is less than 7, and nothing is known of it and 3.
+    """
+    limits, signs = np.atleast_1d(wanted), pd.Series(np.asarray(bound))
+    less, more = ((signs == sign).fillna(False).to_numpy(bool) for sign in "<>")
+    given = values.to_numpy(np.float64, na_value=np.nan)
+    inside = np.nextafter(given, np.where(less, -np.inf, np.where(more, np.inf, given)))
+    is_decided = ~(less & (given > limits.min())) & ~(more & (given < limits.max()))
+    return pd.Series(inside), is_decided

@@ -93,7 +93,8 @@ class RuleSet:
         Parameters
         ----------
         table
-            Columns by name, each of length `rows`; what is missing stays unknown.
+            Columns by name, each of length `rows`, with the bounds of censored ones where there are any; what is
+            missing stays unknown.
         rows
             Number of soils.
 
@@ -340,7 +341,8 @@ def rate(soils: pd.DataFrame, rule_sets: Sequence[RuleSet]) -> pd.DataFrame:
         clause that decided; never a rule that was not met) and ``subgrade_rating`` (the source's own word), with
         ``verdict`` as the code.
     """
-    table = {name: soils[name].to_numpy() for rule_set in rule_sets for name in rule_set.columns if name in soils}
+    asked = {end for rule_set in rule_sets for name in rule_set.columns for end in (name, f"{name}_bound")}
+    table = {name: soils[name].to_numpy() for name in asked.intersection(soils.columns)}
     judged = [rule_set.codes(table, len(soils)) for rule_set in rule_sets]
     rank = np.empty(len(VERDICTS), dtype=int)
     rank[list(WORST_FIRST)] = range(len(VERDICTS))

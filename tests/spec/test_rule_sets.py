@@ -181,6 +181,33 @@ def test_missing_is_neither_yes_nor_no(when: str, limit: float, index: float, ve
     assert rules.rate(table, [rule_set])["suitability"].tolist() == [verdict]
 
 
+REPORTED = [
+    # condition                     as reported   verdict: a bound is used as far as it decides
+    ("cbr_soaked_pct < 3", "<3", "unsuitable"),
+    ("cbr_soaked_pct < 3", "<2", "unsuitable"),
+    ("cbr_soaked_pct < 3", "<5", "not assessed"),
+    ("cbr_soaked_pct < 3", ">3", "suitable"),
+    ("cbr_soaked_pct < 3", ">2", "not assessed"),
+    ("cbr_soaked_pct < 3", "3", "suitable"),
+    ("cbr_soaked_pct >= 3", "<3", "suitable"),
+    ("cbr_soaked_pct > 3", ">3", "unsuitable"),
+    ("cbr_soaked_pct > 3", "<5", "not assessed"),
+    ("cbr_soaked_pct == 3", "<3", "suitable"),
+    ("cbr_soaked_pct == 3", "<5", "not assessed"),
+    ("cbr_soaked_pct in [3, 4]", ">4", "suitable"),
+    ("cbr_soaked_pct in [3, 4]", ">3", "not assessed"),
+    ("not cbr_soaked_pct >= 3", "<3", "unsuitable"),
+]
+
+
+@pytest.mark.parametrize(("when", "reported", "verdict"), REPORTED)
+def test_less_than_and_more_than_decide_as_far_as_they_reach(when: str, reported: str, verdict: str) -> None:
+    table = pd.DataFrame({"cbr_soaked_pct": [float(reported.strip("<>")), 3.5], "cbr_soaked_pct_bound": pd.NA})
+    table["cbr_soaked_pct_bound"] = pd.array([reported[0] if reported[0] in "<>" else None, None], dtype="string")
+    rule_set = rules.parse_rule_set(HEAD + rule(when) + REST, "test")
+    assert rules.rate(table, [rule_set])["suitability"].iloc[0] == verdict
+
+
 def test_a_rule_may_say_that_silence_is_no() -> None:
     text = HEAD + rule("organic_pct > 5", more='when_missing = "not_met"') + REST
     table = soils([{"organic_pct": NAN}, {"organic_pct": 6}])

@@ -5,7 +5,7 @@ from __future__ import annotations
 from geomap.exports import EXPORTS
 from geomap.ratings import rules
 from geomap.readers import alignments, borings, surfaces
-from geomap.soils.systems import SYSTEMS
+from geomap.soils.systems import SYSTEMS, astm_d2487
 
 
 def choices() -> dict[str, list[str]]:
@@ -14,6 +14,7 @@ def choices() -> dict[str, list[str]]:
         "systems": [system.NAME for system in SYSTEMS],
         "rules": rules.rule_set_names(),
         "products": [export.NAME for export in EXPORTS],
+        "groups": list(astm_d2487.SYMBOLS),
     }
 
 

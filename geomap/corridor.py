@@ -1,7 +1,7 @@
 """The corridor file: TOML in, a frozen :class:`Corridor` out. This module alone knows its keys.
 
 A section that geomap gains is declared here and nowhere else; `corridor_text` makes the messages, and the commented
-file of ``geomap new``, from the same declarations.
+file of ``geomap new``, from the same declarations; `corridor_checks` compares it with the files and names there are.
 """
 
 from __future__ import annotations
@@ -13,16 +13,17 @@ from typing import Literal
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError
 
-from geomap.corridor_text import place, sentence, unknown_key
+from geomap.corridor_checks import Keys, Written, file_problems, heading_problems, name_problems, order_problems
+from geomap.corridor_text import sentence, unknown_key
 from geomap.errors import UsageError, problem
-from geomap.registry import no_such_name
-from geomap.tables import schema
 
 FILE_NAME = "corridor.toml"
+LAYOUTS = {"alignment": "vertices", "ground": "levels", "formation": "levels"}  # of the other tables: as the section
+NEED_A_DIAMETER = ("crown", "cover")
 
 
 class _Section(BaseModel):
-    model_config = ConfigDict(extra="forbid", frozen=True)
+    model_config = ConfigDict(extra="forbid", frozen=True, allow_inf_nan=False)
 
 
 class About(_Section):
@@ -155,8 +156,8 @@ class Subgrade(_Section):
 class Profile(_Section):
     """Section ``[profile]``."""
 
-    step_m: float = Field(10.0, gt=0, le=1000, description="length of a step")
-    thickness_m: float = Field(0.25, gt=0.01, le=10, description="thickness of a cell")
+    step_m: float = Field(10.0, ge=0.1, le=1000, description="length of a step")
+    thickness_m: float = Field(0.25, ge=0.01, le=10, description="thickness of a cell")
     depth_m: float = Field(6.0, gt=0, le=200, description="depth below ground, at least")
     systems: list[str] = Field(
         default=["astm_d2487", "aashto_m145"],
@@ -171,10 +172,10 @@ class Estimation(_Section):
     realizations: int = Field(200, ge=20, le=10_000, description="number of draws")
     seed: int = Field(1, ge=0, description="the same seed gives the same draws")
     horizontal_range_m: float | None = Field(
-        None, gt=0, description="range along the line; absent: a stated default", examples=[300.0]
+        None, ge=1, le=100_000, description="range along the line; absent: a stated default", examples=[300.0]
     )
     vertical_range_m: float | None = Field(
-        None, gt=0, description="range in depth; absent: a stated default", examples=[2.0]
+        None, ge=0.05, le=1000, description="range in depth; absent: a stated default", examples=[2.0]
     )
 
 
@@ -244,7 +245,7 @@ def read_corridor(path: str | Path, choices: Mapping[str, Collection[str]]) -> C
     path
         The file, or a folder that holds ``corridor.toml``.
     choices
-        The names known here by key: ``systems``, ``rules``, ``products``.
+        The names known here by key: ``systems``, ``rules``, ``products``, and ``groups`` for the imported fill.
 
     Raises
     ------
@@ -278,65 +279,44 @@ def read_corridor(path: str | Path, choices: Mapping[str, Collection[str]]) -> C
         raise UsageError(
             "\n".join(dict.fromkeys(sentence(Corridor, file.name, text, e) for e in error.errors()))
         ) from None
-    problems = [
-        *_path_problems(corridor, text),
-        *_name_problems(corridor, text, choices),
-        *_map_problems(corridor, text),
-    ]
+    problems = _problems(corridor, Written(corridor.path, text, data), choices)
     if problems:
         raise UsageError("\n".join(problems))
     return corridor
 
 
-def _path_problems(corridor: Corridor, text: str) -> list[str]:
-    found = []
-    for section, part in {"alignment": corridor.alignment, **corridor.tables()}.items():
-        where = place(corridor.path.name, text, (section, "file"))
-        for file in part.files:
-            target = (corridor.folder / file).resolve()
-            if not target.is_relative_to(corridor.folder):
-                found.append(problem(where, file, "a file inside the folder of the corridor file", "copy it there"))
-            elif not target.is_file():
-                found.append(
-                    problem(
-                        where,
-                        file,
-                        "a file that exists",
-                        "correct the name; it is relative to the corridor file",
-                    )
-                )
-    if corridor.output_folder.exists() and not corridor.output_folder.is_dir():
-        where = place(corridor.path.name, text, ("outputs", "folder"))
-        found.append(problem(where, corridor.outputs.folder, "a folder", "name another one"))
-    return found
-
-
-def _name_problems(corridor: Corridor, text: str, choices: Mapping[str, Collection[str]]) -> list[str]:
-    asked = {
-        ("subgrade", "rules"): corridor.subgrade.rules,
+def _problems(corridor: Corridor, written: Written, choices: Mapping[str, Collection[str]]) -> list[str]:
+    parts = {"alignment": corridor.alignment, **corridor.tables()}
+    rules, fill = corridor.subgrade.rules, corridor.fill
+    own_rules = [name for name in rules if name.endswith(".toml") and (corridor.folder / name).is_file()]
+    asked: dict[Keys, list[str]] = {
+        ("subgrade", "rules"): rules,
         ("profile", "systems"): corridor.profile.systems,
         ("outputs", "products"): corridor.outputs.products,
+        **({("fill", "group"): [fill.group]} if fill else {}),
     }
-    found = []
-    for keys, names in asked.items():
-        where = place(corridor.path.name, text, keys)
-        for name in names:
-            own_file = keys[1] == "rules" and name.endswith(".toml") and (corridor.folder / name).is_file()
-            if name not in choices[keys[1]] and not own_file:
-                found.append(no_such_name(name, choices[keys[1]], where))
-        if len(set(names)) < len(names):
-            found.append(problem(where, ", ".join(names), "each name once", "delete the second one"))
-    return found
+    known = {**choices, "rules": [*choices["rules"], *own_rules], "group": choices["groups"]}
+    thickness = ("profile", "thickness_m"), corridor.profile.thickness_m
+    zone = ("subgrade", "depth_m"), corridor.subgrade.depth_m
+    return [
+        *file_problems(written, {name: part.files for name, part in parts.items()}),
+        *_folder_problems(corridor, written),
+        *name_problems(written, asked, known),
+        *heading_problems(written, LAYOUTS, {name: part.columns for name, part in parts.items()}),
+        *order_problems(written, thickness, zone, "make the cells thinner or the design zone deeper"),
+        *_pipe_problems(corridor, written),
+    ]
 
 
-def _map_problems(corridor: Corridor, text: str) -> list[str]:
-    found = []
-    for section, part in {"alignment": corridor.alignment, **corridor.tables()}.items():
-        name = {"ground": "levels", "formation": "levels", "alignment": "vertices"}.get(section, section)
-        layout = schema.inputs()[name]
-        for key in part.columns:
-            welcome = layout.takes_passing and schema.size_from_passing_column(key) is not None
-            if key not in layout.columns and not welcome:
-                where = place(corridor.path.name, text, (section, "columns", key))
-                found.append(no_such_name(key, layout.columns, where))
-    return found
+def _folder_problems(corridor: Corridor, written: Written) -> list[str]:
+    if not corridor.output_folder.exists() or corridor.output_folder.is_dir():
+        return []
+    return [problem(written.place("outputs", "folder"), corridor.outputs.folder, "a folder", "name another one")]
+
+
+def _pipe_problems(corridor: Corridor, written: Written) -> list[str]:
+    design = corridor.formation
+    if design is None or design.reference not in NEED_A_DIAMETER or design.pipe_diameter_m is not None:
+        return []
+    found, allowed = f"{design.reference} without pipe_diameter_m", "crown and cover with the outside diameter"
+    return [problem(written.place("formation", "reference"), found, allowed, "add `pipe_diameter_m`")]

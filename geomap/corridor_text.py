@@ -14,12 +14,17 @@ from pydantic import BaseModel
 from geomap.errors import problem
 from geomap.registry import no_such_name
 
+KINDS = ("str", "list[str]", "float")  # pydantic names the kind tried at the end, where a key may be of several
+ALLOWED_KINDS: dict[Any, str] = {
+    str | list[str]: "a file name or a list of them",
+    float | str: "a finite number, or a chainage as text",
+}
 SHOWN_ONCE = ("sheet", "crs", "columns")  # keys that every table may have; the template shows them under [borings]
 
 
 def place(name: str, text: str, keys: tuple[Any, ...]) -> str:
     """Return ``file:line: [section] key``; the line of the nearest key that stands in the file."""
-    words = [str(k) for k in keys if not isinstance(k, int) and k not in ("str", "list[str]", "float")]
+    words = [str(k) for k in keys if not isinstance(k, int) and k not in KINDS]
     section = ""
     found: dict[str, int] = {}
     for number, line in enumerate(text.splitlines(), 1):
@@ -58,7 +63,8 @@ def sentence(root: type[BaseModel], name: str, text: str, error: Any) -> str:
     where = place(name, text, keys)
     if error["type"] == "missing":
         return problem(where, "nothing", "a value: this key is required", f"add `{keys[-1]}`")
-    allowed = "a file name or a list of them" if keys[-1] in ("str", "list[str]") else error["msg"]
+    kinds = keys[-1] in KINDS and model_at(root, keys[:-2]).model_fields[keys[-2]].annotation
+    allowed = ALLOWED_KINDS.get(kinds, error["msg"])
     return problem(where, error["input"], allowed.removeprefix("Input should be "), "correct the value")
 
 

@@ -84,6 +84,7 @@ def no_such_name(name: str, choices: Iterable[str], place: str) -> str:
     "corridor.toml:12: systems: found 'astm_d2478'; allowed: astm_d2487, usda_texture; did you mean astm_d2487?"
     """
     names = sorted(choices)
-    near = difflib.get_close_matches(name, names, n=1, cutoff=0.6)
+    same = [known for known in names if known.casefold() == name.casefold()]
+    near = same or difflib.get_close_matches(name, names, n=1, cutoff=0.6)
     remedy = f"did you mean {near[0]}?" if near else "choose one of these"
     return problem(place, name, ", ".join(names) or "none yet", remedy)

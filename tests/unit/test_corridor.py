@@ -7,14 +7,17 @@ from pathlib import Path
 
 import pytest
 
+from geomap import catalog
 from geomap.corridor import Corridor, read_corridor
-from geomap.corridor_text import template
+from geomap.corridor_text import model_at, template
 from geomap.errors import UsageError
+from geomap.soils.systems import astm_d2487
 
 CHOICES = {
     "systems": ["astm_d2487", "aashto_m145", "usda_texture"],
     "rules": ["general_subgrade"],
     "products": ["geopackage", "web_map", "schedules"],
+    "groups": ["GW", "GM", "GW-GM", "SM", "CL"],
 }
 GOOD = """\
 [corridor]
@@ -67,7 +70,7 @@ def test_a_folder_or_the_file_itself_may_be_named(tmp_path: Path) -> None:
         ('file = "samples.csv"', 'file = "sample.csv"', 9, "a file that exists"),
         ('file = "samples.csv"', 'file = "../samples.csv"', 9, "inside the folder"),
         ('file = "samples.csv"', "file = 3", 9, "a file name or a list of them"),
-        ('file = "samples.csv"', 'file = "samples.csv"\n[profile]\nstep_m = -1', 11, "greater than 0"),
+        ('file = "samples.csv"', 'file = "samples.csv"\n[profile]\nstep_m = -1', 11, "greater than or equal to 0.1"),
         (
             'file = "samples.csv"',
             'file = "samples.csv"\n[profile]\nsystems = ["astm_d2478"]',
@@ -90,6 +93,172 @@ def test_what_is_wrong_is_named_with_its_line(tmp_path: Path, changed: str, to: 
     assert text != GOOD
     message = refusal(tmp_path, text)
     assert any(part.startswith(f"corridor.toml:{line}:") and words in part for part in message.splitlines()), message
+
+
+def with_key(section: str, key: str, value: str) -> str:
+    """Return a good corridor file with one key more, in line 11 or, in a section that it has, further up."""
+    if f"[{section}]" in GOOD:
+        return GOOD.replace(f"[{section}]", f"[{section}]\n{key} = {value}")
+    needs = {"formation": 'file = "line.csv"\nreference = "invert"\n', "fill": 'group = "GM"\n'}
+    return f"{GOOD}[{section}]\n{key} = {value}\n{needs.get(section, '')}"
+
+
+NUMBERS = [
+    ("corridor", "half_width_m"),
+    ("alignment", "grid_to_ground"),
+    ("alignment", "start_chainage"),
+    ("samples", "join_tolerance_m"),
+    ("samples", "peat_organic_pct"),
+    ("formation", "construction_thickness_m"),
+    ("formation", "pipe_diameter_m"),
+    ("fill", "cbr_pct"),
+    ("subgrade", "depth_m"),
+    ("subgrade", "width_m"),
+    ("subgrade", "side_slope"),
+    ("profile", "step_m"),
+    ("profile", "thickness_m"),
+    ("profile", "depth_m"),
+    ("estimation", "realizations"),
+    ("estimation", "seed"),
+    ("estimation", "horizontal_range_m"),
+    ("estimation", "vertical_range_m"),
+]
+
+
+def test_the_list_of_numbers_is_whole() -> None:
+    numbers = {
+        (section, key)
+        for section in Corridor.model_fields
+        if section != "path"
+        for key, field in model_at(Corridor, (section,)).model_fields.items()
+        if {float, int} & {field.annotation, *getattr(field.annotation, "__args__", ())}
+    }
+    assert numbers == set(NUMBERS)
+
+
+@pytest.mark.parametrize("value", ["inf", "-inf", "nan", "1e999"])
+@pytest.mark.parametrize(("section", "key"), NUMBERS)
+def test_a_number_is_finite(section: str, key: str, value: str, tmp_path: Path) -> None:
+    message = refusal(tmp_path, with_key(section, key, value))
+    assert f"[{section}] {key}: found '" in message
+    assert "finite" in message
+    assert len(message.splitlines()) == 1
+
+
+@pytest.mark.parametrize("value", ["inf", "nan"])
+def test_a_chainage_equation_is_finite(value: str, tmp_path: Path) -> None:
+    message = refusal(tmp_path, with_key("alignment", "equations", f"[{{ back = {value}, ahead = '1+200' }}]"))
+    assert f"found '{value}'; allowed: a finite number, or a chainage as text" in message
+
+
+@pytest.mark.parametrize(
+    ("section", "key", "least", "most"),
+    [
+        ("estimation", "horizontal_range_m", 1, 100_000),
+        ("estimation", "vertical_range_m", 0.05, 1000),
+        ("profile", "step_m", 0.1, 1000),
+    ],
+)
+def test_a_number_lies_within_its_limits(section: str, key: str, least: float, most: float, tmp_path: Path) -> None:
+    for value in (least, most):
+        corridor = corridor_in(tmp_path, with_key(section, key, str(value)))
+        assert getattr(getattr(corridor, section), key) == value
+    for value, words in ((least * 0.99, f"equal to {least}"), (most * 1.01, f"equal to {most}"), (0, "equal to")):
+        message = refusal(tmp_path, with_key(section, key, str(value)))
+        assert message.startswith(f"corridor.toml:11: [{section}] {key}: found")
+        assert words in message
+
+
+def test_a_cell_is_a_centimeter_thick_at_least(tmp_path: Path) -> None:
+    assert corridor_in(tmp_path, with_key("profile", "thickness_m", "0.01")).profile.thickness_m == 0.01
+    assert "equal to 0.01" in refusal(tmp_path, with_key("profile", "thickness_m", "0.0099"))
+
+
+@pytest.mark.parametrize(
+    ("text", "message"),
+    [
+        (
+            "[subgrade]\ndepth_m = 0.5\n[profile]\nstep_m = 20\nthickness_m = 0.6\n",
+            (
+                "corridor.toml:14: [profile] thickness_m: found '0.6'; allowed: at most 0.5, the value at "
+                "corridor.toml:11: [subgrade] depth_m; make the cells thinner or the design zone deeper"
+            ),
+        ),
+        (
+            "[profile]\nthickness_m = 1.5\n",
+            (
+                "corridor.toml:11: [profile] thickness_m: found '1.5'; allowed: at most 1.0, the value at "
+                "corridor.toml: [subgrade] depth_m (by default); make the cells thinner or the design zone deeper"
+            ),
+        ),
+        (
+            "[subgrade]\ndepth_m = 0.2\n",
+            (
+                "corridor.toml: [profile] thickness_m (by default): found '0.25'; allowed: at most 0.2, the value at "
+                "corridor.toml:11: [subgrade] depth_m; make the cells thinner or the design zone deeper"
+            ),
+        ),
+    ],
+)
+def test_a_cell_is_no_thicker_than_the_design_zone(text: str, message: str, tmp_path: Path) -> None:
+    assert refusal(tmp_path, GOOD + text) == message
+
+
+def test_a_cell_may_be_as_thick_as_the_design_zone(tmp_path: Path) -> None:
+    corridor = corridor_in(tmp_path, GOOD + "[subgrade]\ndepth_m = 0.5\n[profile]\nthickness_m = 0.5\n")
+    assert corridor.profile.thickness_m == corridor.subgrade.depth_m
+
+
+@pytest.mark.parametrize("reference", ["formation", "finished_level", "invert", "crown", "cover", "ground"])
+def test_crown_and_cover_need_the_diameter_of_the_pipe(reference: str, tmp_path: Path) -> None:
+    text = f'{GOOD}[formation]\nfile = "line.csv"\nreference = "{reference}"\n'
+    if reference in ("crown", "cover"):
+        assert refusal(tmp_path, text) == (
+            f"corridor.toml:12: [formation] reference: found '{reference} without pipe_diameter_m'; allowed: crown and "
+            "cover with the outside diameter; add `pipe_diameter_m`"
+        )
+        text += "pipe_diameter_m = 0.6\n"
+    design = corridor_in(tmp_path, text).formation
+    assert design is not None
+    assert design.reference == reference
+
+
+@pytest.mark.parametrize(
+    ("group", "remedy"),
+    [("gm", "did you mean GM?"), ("GWGM", "did you mean GW-GM?"), ("A-2-4", "choose one of these"), ("", "choose one")],
+)
+def test_the_group_of_the_fill_is_one_that_is_known(group: str, remedy: str, tmp_path: Path) -> None:
+    message = refusal(tmp_path, f'{GOOD}[fill]\ngroup = "{group}"\n')
+    assert message.startswith(
+        f"corridor.toml:11: [fill] group: found '{group}'; allowed: CL, GM, GW, GW-GM, SM; {remedy}"
+    )
+    fill = corridor_in(tmp_path, f'{GOOD}[fill]\ngroup = "GW-GM"\n').fill
+    assert fill is not None
+    assert fill.group == "GW-GM"
+
+
+def test_what_geomap_knows_holds_every_group_of_astm_d2487() -> None:
+    assert catalog.choices()["groups"] == list(astm_d2487.SYMBOLS)
+    assert {"GM", "CH", "PT", "SW-SC"} <= set(catalog.choices()["groups"])
+
+
+def test_a_rule_file_of_the_user_is_a_name_too(tmp_path: Path) -> None:
+    (tmp_path / "ours.toml").write_text("x = 1", encoding="utf-8")
+    rules = '[subgrade]\nrules = ["general_subgrade", "ours.toml"]\n'
+    assert corridor_in(tmp_path, GOOD + rules).subgrade.rules == ["general_subgrade", "ours.toml"]
+    assert "each name once" in refusal(tmp_path, GOOD + rules.replace("general_subgrade", "ours.toml"))
+
+
+def test_a_file_in_place_of_the_output_folder_is_refused(tmp_path: Path) -> None:
+    (tmp_path / "outputs").write_text("x", encoding="utf-8")
+    assert refusal(tmp_path, GOOD).startswith("corridor.toml: [outputs] folder (by default): found 'outputs'")
+
+
+@pytest.mark.parametrize("use", ["road", "pipeline"])
+def test_a_corridor_is_for_a_road_or_a_pipeline(use: str, tmp_path: Path) -> None:
+    text = GOOD.replace("[alignment]", f'use = "{use}"\n[alignment]')
+    assert corridor_in(tmp_path, text).corridor.use == use
+    assert "'road' or 'pipeline'" in refusal(tmp_path, text.replace(f'"{use}"', '"rail"'))
 
 
 def test_all_problems_are_told_at_once(tmp_path: Path) -> None:

@@ -57,9 +57,8 @@ def staging(target_folder: Path) -> Iterator[Path]:
     OutputInUseError
         The folder cannot be made, or the disk refuses what is written inside the ``with`` block.
     """
-    made = [folder for folder in (target_folder, *target_folder.parents) if not folder.exists()]
+    made = _made(target_folder)
     try:
-        target_folder.mkdir(parents=True, exist_ok=True)
         _remove_left_behind(target_folder)
         with _claimed(target_folder) as folder:
             yield folder
@@ -68,9 +67,30 @@ def staging(target_folder: Path) -> Iterator[Path]:
             raise
         raise _refused(target_folder, cause) from cause
     finally:
-        for folder in made:
-            with contextlib.suppress(OSError):  # not empty: something was published
-                folder.rmdir()
+        _remove_empty(made)
+
+
+def _made(folder: Path) -> list[Path]:
+    """Make a folder with those above it and return which are new, the deepest first; try whether it takes anything.
+
+    Whatever the system says here is about the name that the user chose, not a defect: a part of it too long, a
+    folder of the system that takes no folders, a file in the way.
+    """
+    new: list[Path] = []
+    try:
+        new += [part for part in (folder, *folder.parents) if not os.path.lexists(part)]
+        folder.mkdir(parents=True, exist_ok=True)
+        Path(tempfile.mkdtemp(prefix=STAGING_PREFIX, dir=folder)).rmdir()
+    except (OSError, ValueError) as cause:  # ValueError: a null character in the name
+        _remove_empty(new)
+        raise _refused(folder, cause) from cause
+    return new
+
+
+def _remove_empty(folders: Sequence[Path]) -> None:
+    for folder in folders:
+        with contextlib.suppress(OSError, ValueError):  # not empty: something was published; or no name at all
+            folder.rmdir()
 
 
 def publish(staged: Sequence[Path], target_folder: Path) -> list[Path]:

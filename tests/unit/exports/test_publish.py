@@ -245,6 +245,35 @@ def test_a_target_that_is_a_file_is_a_clear_error(tmp_path: Path) -> None:
         pass
 
 
+@pytest.mark.parametrize("name", ["x" * 300, "a/" + "y" * 300, "null\0character"])
+def test_a_folder_that_cannot_have_its_name_is_a_clear_error_and_nothing_is_left(tmp_path: Path, name: str) -> None:
+    with (
+        pytest.raises(OutputInUseError, match=r"cannot be written \(.*choose another folder"),
+        staging(tmp_path / name),
+    ):
+        pass
+    assert left_in(tmp_path) == []
+
+
+@pytest.mark.parametrize("code", [errno.ENOENT, errno.EINVAL, errno.EMFILE])
+def test_whatever_the_system_says_about_making_the_folder_is_said_to_the_user(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, code: int
+) -> None:
+    def refuse(self: Path, *_: object, **__: object) -> None:
+        raise OSError(code, os.strerror(code), str(self))
+
+    monkeypatch.setattr(Path, "mkdir", refuse)
+    with pytest.raises(OutputInUseError, match=os.strerror(code)), staging(tmp_path / "new"):
+        pass
+
+
+@pytest.mark.skipif(not Path("/proc/self").is_dir(), reason="needs the folder of processes of Linux")
+@pytest.mark.parametrize("place", ["/proc", "/proc/xx"])
+def test_a_folder_of_the_system_that_takes_no_files_is_a_clear_error(place: str) -> None:
+    with pytest.raises(OutputInUseError, match=rf"{place}: cannot be written"), staging(Path(place)):
+        pass
+
+
 @pytest.mark.skipif(not hasattr(os, "seteuid"), reason="needs the permissions of POSIX")
 def test_a_folder_without_permission_is_a_clear_error() -> None:
     with tempfile.TemporaryDirectory() as folder:

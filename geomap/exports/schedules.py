@@ -1,5 +1,8 @@
 """Schedules: what a contractor or a checker reads in a spreadsheet, as CSV files in a folder of their own.
 
+The folder has the name of the corridor, ``<corridor>_schedules``, so that several corridors can share one output
+folder. In it are:
+
 - ``subgrade.csv``: stretches of the alignment with one answer each, merged from the steps;
 - ``borings.csv``, ``samples.csv``, ``findings.csv``: the tables behind it;
 - ``about.csv``: issue, cautions, reference systems, counts and the run, a line each.
@@ -14,13 +17,14 @@ RFC 4180 asks. Lengths are in the corridor's unit for people, named in the headi
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable
 from pathlib import Path
 
 import pandas as pd
 
 from geomap.exports.stretches import stretches
-from geomap.exports.texts import spreadsheet_cell
+from geomap.exports.texts import file_stem, spreadsheet_cell
 from geomap.results import Results
 from geomap.tables import schema
 from geomap.units import factor_from_spelling
@@ -28,10 +32,13 @@ from geomap.units import factor_from_spelling
 NAME = "schedules"
 TITLE = "Schedules of subgrade, borings, samples and findings as CSV"
 
-FOLDER = "schedules"
+FOLDER_ENDING = "_schedules"
 _METERS = "(m)"
 _LENGTH_DECIMALS = 3  # a millimeter, or a thousandth of a foot
 _OTHER_DECIMALS = 6  # takes away the tail that binary numbers leave, and no more
+_CHAINAGES = ("Chainage", "From chainage", "To chainage")  # headings of labels that geomap writes itself
+_NEGATIVE_CHAINAGE = re.compile(r"-\d+\+\d+(?:\.\d+)?")
+_MINUS = "\u2212"  # the minus sign proper, which starts no formula
 
 _BORINGS = (
     *("boring", "chainage", "distance_m", "offset_m", "side", "ground_level_m", "depth_m", "date", "method"),
@@ -63,7 +70,7 @@ def write(results: Results, folder: Path) -> list[Path]:
         "samples": _titled(_as_reported(_table(results, "samples")), _SAMPLES),
         "findings": _titled(_table(results, "findings"), schema.layers()["findings"].columns),
     }
-    target = folder / FOLDER
+    target = folder / (file_stem(results.name) + FOLDER_ENDING)
     target.mkdir(exist_ok=True)
     paths = []
     for name, table in schedules.items():
@@ -112,10 +119,24 @@ def csv_text(table: pd.DataFrame, foot: Iterable[str] = ()) -> str:
     safe = table.copy()
     for name in table.columns:
         if not pd.api.types.is_numeric_dtype(table[name].dtype):
-            safe[name] = table[name].map(lambda value: spreadsheet_cell(str(value)), na_action="ignore")
+            shown = _label if name in _CHAINAGES else spreadsheet_cell
+            safe[name] = table[name].map(lambda value, shown=shown: shown(str(value)), na_action="ignore")
     body = safe.to_csv(index=False, lineterminator="\r\n")
     lines = pd.DataFrame([spreadsheet_cell(line) for line in foot])
     return body + ("\r\n" + lines.to_csv(index=False, header=False, lineterminator="\r\n") if len(lines) else "")
+
+
+def _label(text: str) -> str:
+    """Return a safe chainage; one before zero has a minus sign proper, for a hyphen would make it a sum.
+
+    A spreadsheet reads -0+500 as a formula and shows 500, the wrong side of the start.
+
+    Examples
+    --------
+    >>> _label("-0+500") == "\u2212" + "0+500", _label("12+300"), _label("-1+1-1")
+    (True, '12+300', "'-1+1-1")
+    """
+    return _MINUS + text[1:] if _NEGATIVE_CHAINAGE.fullmatch(text) else spreadsheet_cell(text)
 
 
 def foot(results: Results) -> str:

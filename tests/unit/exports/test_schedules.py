@@ -14,6 +14,7 @@ import pytest
 
 from geomap.exports import schedules
 from geomap.exports.stretches import stretches
+from geomap.exports.texts import file_stem
 from geomap.results import Results
 from tests.unit.exports.sample import STEP_M, STEPS, sample_results
 
@@ -25,6 +26,12 @@ def read(path: Path) -> list[list[str]]:
     return list(csv.reader(io.StringIO(path.read_bytes().decode("utf-8-sig"), newline="")))
 
 
+def target(folder: Path) -> Path:
+    """Return the only folder of schedules in a folder."""
+    (found,) = folder.glob("*_schedules")
+    return found
+
+
 def table(path: Path) -> pd.DataFrame:
     """Return the rows above the foot."""
     head, *rows = read(path)
@@ -34,8 +41,9 @@ def table(path: Path) -> pd.DataFrame:
 @pytest.fixture(scope="module")
 def folder(results: Results, tmp_path_factory: pytest.TempPathFactory) -> Path:
     folder = tmp_path_factory.mktemp("schedules")
-    assert schedules.write(results, folder) == [folder / "schedules" / name for name in NAMES]
-    return folder / "schedules"
+    written = folder / f"{file_stem(results.name)}_schedules"
+    assert schedules.write(results, folder) == [written / name for name in NAMES]
+    return written
 
 
 @pytest.mark.parametrize("name", NAMES)
@@ -126,7 +134,7 @@ class TestSubgrade:
     def test_without_steps_there_are_headings(self, results: Results, tmp_path: Path) -> None:
         tables = {name: table for name, table in results.tables.items() if name != "subgrade"}
         schedules.write(dataclasses.replace(results, tables=tables), tmp_path)
-        assert len(table(tmp_path / "schedules" / "subgrade.csv")) == 0
+        assert len(table(target(tmp_path) / "subgrade.csv")) == 0
 
 
 class TestUnits:
@@ -136,16 +144,16 @@ class TestUnits:
     def test_lengths_are_converted_with_their_heading(self, tmp_path: Path, unit: str, factor: float) -> None:
         results = sample_results(length_unit=unit)
         schedules.write(results, tmp_path)
-        borings = table(tmp_path / "schedules" / "borings.csv")
+        borings = table(target(tmp_path) / "borings.csv")
         assert not [heading for heading in borings.columns if heading.endswith("(m)")]
         expected = results.tables["borings"]["distance_m"].to_numpy() / factor
         np.testing.assert_allclose(borings[f"Distance ({unit})"].astype(float), expected, atol=0.0005)
-        stretched = table(tmp_path / "schedules" / "subgrade.csv")
+        stretched = table(target(tmp_path) / "subgrade.csv")
         assert stretched[f"Length ({unit})"].astype(float).sum() == pytest.approx(600 / factor, abs=0.02)
 
     def test_other_quantities_are_not(self, tmp_path: Path, folder: Path) -> None:
         schedules.write(sample_results(length_unit="ft"), tmp_path)
-        in_feet = table(tmp_path / "schedules" / "samples.csv")
+        in_feet = table(target(tmp_path) / "samples.csv")
         assert in_feet["Fines (%)"].tolist() == table(folder / "samples.csv")["Fines (%)"].tolist()
 
 
@@ -162,16 +170,28 @@ class TestSamples:
         assert rows.loc[("BH-3", "S3"), "USCS reason"] == "fines_pct is missing"
 
 
+def test_two_corridors_in_one_folder_keep_their_own_schedules(tmp_path: Path) -> None:
+    paths = [path for name in ("Line A", "Line B") for path in schedules.write(sample_results(name=name), tmp_path)]
+    assert len(set(paths)) == 2 * len(NAMES)
+    assert all(path.exists() for path in paths)
+
+
+def test_a_chainage_before_zero_starts_no_formula_and_has_no_apostrophe() -> None:
+    rows = pd.DataFrame({"Chainage": ["-0+500", "0+000", "-1+2+3", None], "Boring": ["-0+500", "0+000", "B", "C"]})
+    lines = schedules.csv_text(rows).split("\r\n")
+    assert lines[1:5] == ["\u22120+500,'-0+500", "0+000,0+000", "'-1+2+3,B", ",C"]
+
+
 @pytest.mark.parametrize("word", HOSTILE)
 def test_no_cell_starts_a_formula_and_numbers_stay_numbers(word: str, tmp_path: Path) -> None:
     results = sample_results(name=word, first=word)
     schedules.write(dataclasses.replace(results, issue=word), tmp_path)
     for name in NAMES:
-        for row in read(tmp_path / "schedules" / name):
+        for row in read(target(tmp_path) / name):
             for cell in row:
                 assert not re.match(r"[\s]*[=+@]|[\t\r]", cell), cell
                 assert not cell.startswith("-") or re.fullmatch(r"-[\d.e-]+", cell)
-    borings = table(tmp_path / "schedules" / "borings.csv")
+    borings = table(target(tmp_path) / "borings.csv")
     assert (borings["Offset (m)"].astype(float) < 0).any()
     assert borings["Boring"].iloc[0].lstrip("'") == word
 

@@ -132,7 +132,8 @@ def checked_vertices(
     is_new = np.ones(len(vertices), dtype=bool)
     is_new[1:] = (np.diff(vertices[:, :2], axis=0) != 0).any(axis=1)
     if is_new.sum() < 2:
-        found = f"{len(vertices)} vertices in {int(is_new.sum())} place"
+        count = len(vertices)
+        found = "one vertex" if count == 1 else f"{count} vertices, all in one place" if count else "no vertex"
         raise InputError(problem(str(place), found, "two vertices apart, or more", "give the whole line"))
     for position in np.flatnonzero(~is_new):
         at = place if rows is None else place.at(int(rows[position]))

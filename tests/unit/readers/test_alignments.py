@@ -139,9 +139,11 @@ def test_a_vertex_without_a_number_is_refused_with_its_row(tmp_path: Path, cell:
         read_line(text_file(tmp_path, f"x,y\n0,0\n1,{cell}\n2,2\n"))
 
 
-@pytest.mark.parametrize("rows", ["", "1,1\n", "1,1\n1,1\n"])
-def test_fewer_than_two_places_are_no_line(tmp_path: Path, rows: str) -> None:
-    with pytest.raises(InputError, match=r"two vertices apart"):
+@pytest.mark.parametrize(
+    ("rows", "found"), [("", "no vertex"), ("1,1\n", "one vertex"), ("1,1\n1,1\n", "2 vertices, all in one place")]
+)
+def test_fewer_than_two_places_are_no_line(tmp_path: Path, rows: str, found: str) -> None:
+    with pytest.raises(InputError, match=f"found '?{found}'?; allowed: two vertices apart"):
         read_line(text_file(tmp_path, "x,y\n" + rows))
 
 

@@ -177,11 +177,12 @@ function makePlan(map, layers, data, colors, chainage, place) {
 
   let named = null;
   let mode = colors.modes.group;
-  const relabel = oncePerFrame(() => {
+  function refresh() {
     sizeBorings();
     refreshGrid();
     labels.place(mode);
-  });
+  }
+  const relabel = oncePerFrame(refresh);
   map.on("zoomend moveend", relabel);
   map.on("move", labels.frame);
 
@@ -192,6 +193,7 @@ function makePlan(map, layers, data, colors, chainage, place) {
   map.getContainer().addEventListener("click", () => { moved = true; });
   // Clear of the buttons on the right, the scale and the signs below.
   const fit = () => map.fitBounds(bounds, { animate: false, paddingTopLeft: [40, 22], paddingBottomRight: [60, 40] });
+  let screen = null; // what the screen showed when printing began
   const pan = (point) => {
     moved = true;
     map.panTo(point, { animate: !still });
@@ -216,6 +218,22 @@ function makePlan(map, layers, data, colors, chainage, place) {
     resize() {
       map.invalidateSize({ animate: false });
       if (!moved) fit();
+    },
+    // On the sheet the plan shows what the reader has in view, drawn before the call returns.
+    fitSheet() {
+      screen = screen || { center: map.getCenter(), zoom: map.getZoom(), bounds: map.getBounds() };
+      map.invalidateSize({ animate: false });
+      if (moved) map.fitBounds(screen.bounds, { animate: false });
+      else fit();
+      refresh();
+      map.getRenderer(inView)._redraw();
+    },
+    leaveSheet() {
+      map.invalidateSize({ animate: false });
+      if (moved) map.setView(screen.center, screen.zoom, { animate: false });
+      else fit();
+      screen = null;
+      refresh();
     },
   };
 }

@@ -24,7 +24,7 @@ function makeProfile(nodes, data, colors, chainage, lengths, place) {
   }
 
   function draw() {
-    const ratio = window.devicePixelRatio || 1;
+    const ratio = pixelRatio();
     scale.resize(canvas.clientWidth, canvas.clientHeight);
     scale.top = 10 + marks.placeNames(place.boring()) * NAME_ROW;
     scale.show(scale.from, scale.to);

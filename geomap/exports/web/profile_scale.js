@@ -3,6 +3,12 @@
 const LEAST_STRETCH = 40; // meters: closer than this there is nothing more to see
 const BAND_HEIGHT = 17;
 
+// Paper has finer points than most screens.
+function pixelRatio() {
+  const ratio = window.devicePixelRatio || 1;
+  return document.documentElement.classList.contains("printing") ? Math.max(ratio, 2) : ratio;
+}
+
 function makeProfileScale(data) {
   const { cells, borings } = data;
   const groundOf = (column) => cells.ground[column] ?? 0;

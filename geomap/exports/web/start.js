@@ -95,17 +95,7 @@
   plan.resize(); // the legend has just taken its room
   profile.show(0, data.length);
   new ResizeObserver(resize).observe(byId("views"));
-  // The sheet has another size than the screen, and the printer does not wait for the next frame.
-  const details = document.querySelector(".findings details");
-  let wasOpen = false;
-  for (const moment of ["beforeprint", "afterprint"]) {
-    window.addEventListener(moment, () => {
-      if (moment === "beforeprint") wasOpen = details.open;
-      details.open = moment === "beforeprint" || wasOpen;
-      plan.resize();
-      profile.draw();
-    });
-  }
+  printSheet(plan, profile, place);
   requestAnimationFrame(() => {
     document.documentElement.dataset.ready = "yes";
     performance.mark("geomap-ready");

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -106,8 +106,7 @@ def check(path: str | Path, tell: Tell = silent) -> Gate:
     judged = judge(taken, job)
     if "uscs_symbol" in judged:
         taken = intake.agree(taken, judged, judged)
-    written = {name: heading for part in given.values() for name, heading in _headings(part).items()}
-    odd_levels = levels.findings.assign(heading=levels.findings["heading"].replace(written))
+    odd_levels = _as_written(levels.findings, given.values())
     if not len(taken.used("borings")):
         of_crs = together([of_crs, NO_BORING.row("", "no boring of use", file=", ".join(corridor.borings.files))])
     found = together([of_line, taken.findings, of_crs, *(part.findings for part in given.values()), odd_levels])
@@ -115,9 +114,14 @@ def check(path: str | Path, tell: Tell = silent) -> Gate:
     return Gate(job, line, chainage, taken, placed, judged, edges, levels, found, counts.reset_index(drop=True))
 
 
-def _headings(levels: intake.Intake) -> dict[str, str]:
-    """Return the heading in the file of each column of a table of levels."""
-    return {column: text for found in levels["levels"].headings.values() for column, text in found.items()}
+def _as_written(findings: pd.DataFrame, tables: Iterable[intake.Intake]) -> pd.DataFrame:
+    """Return findings about levels under the headings of their files; a place is told by distance or chainage."""
+    heading = findings["heading"]
+    for (file, _), found in (item for table in tables for item in table["levels"].headings.items()):
+        place = found.get("distance_m") or found.get("chainage", "")
+        words = {"distance_m": place, "chainage": place, **found}
+        heading = heading.mask(findings["file"] == file, heading.replace(words))
+    return findings.assign(heading=heading)
 
 
 def logged(taken: intake.Intake) -> pd.DataFrame:

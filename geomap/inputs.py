@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
+import numpy as np
 import pandas as pd
 from pyproj import CRS
 
@@ -28,6 +29,7 @@ ODD_PLACE = Check(
     "a line inside the area of its coordinate system",
     "used as it is; check the crs of the corridor and that x is easting and y northing",
 )
+NO_RECORDS = pd.DataFrame({"passing_0_075_mm_pct": np.zeros(0)})  # to see which columns a system gives
 LEVELS = ("ground", "formation")  # sections whose tables are levels along the line
 
 
@@ -65,9 +67,10 @@ def prepare(path: str | Path) -> Job:
     corridor = read_corridor(path, catalog.choices())
     place = corridor.path.name
     systems = tuple(registry.named(SYSTEMS, name, place) for name in corridor.profile.systems)
-    rule_sets = tuple(read_rule_set(name, corridor.folder) for name in corridor.subgrade.rules)
+    symbols = {system.COLUMN: system.SYMBOLS for system in SYSTEMS}
+    rule_sets = tuple(read_rule_set(name, corridor.folder, symbols=symbols) for name in corridor.subgrade.rules)
     asked = {column for rule_set in rule_sets for column in rule_set.columns}
-    further = tuple(system for system in SYSTEMS if system.COLUMN in asked and system not in systems)
+    further = tuple(s for s in SYSTEMS if s not in systems and asked & set(s.classify(NO_RECORDS).columns))
     grid = crs.projected_crs(corridor.corridor.crs, f"{place}: [corridor] crs")
     job = Job(corridor, grid, systems, systems + further, rule_sets)
     for section, part in corridor.tables().items():

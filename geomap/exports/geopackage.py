@@ -124,7 +124,9 @@ def _with_ground(line: Any, length_m: float, known: pd.DataFrame) -> Any:
     if not len(known) or line is None or not length_m > 0:
         return plan
     at = known["distance_m"].to_numpy(float)
-    if at[0] > _NEARER_M or at[-1] < length_m - _NEARER_M:
+    # Levels stand at the centers of steps: half a step is left at each end, and the nearest level holds there.
+    reach = max(_NEARER_M, float(np.diff(at).max(initial=0.0)))
+    if at[0] > reach or at[-1] < length_m - reach:
         return plan
     points = shapely.get_coordinates(plan)
     along = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])

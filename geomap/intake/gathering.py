@@ -50,7 +50,7 @@ def gathered(parts: Iterable[pd.DataFrame], limit: int = 20, severities: Iterabl
     first = many & ~number.duplicated()
     words = groups["row_number"].agg(lambda rows: f" (in {len(rows)} rows: {row_ranges(rows.to_numpy(dtype=int))})")
     words = words.mask(groups["found"].nunique() > 1, " and others" + words)
-    table["found"] = table["found"].mask(first, table["found"] + number.map(words))
+    table.loc[first, "found"] += number[first].map(words)  # on these rows alone: the lists of rows are long
     for name in ("boring", "sample"):
         differs = number.map(groups[name].nunique(dropna=False)) > 1
         table[name] = table[name].mask(first & differs)

@@ -262,7 +262,7 @@ def read_corridor(path: str | Path, choices: Mapping[str, Collection[str]]) -> C
         raise UsageError(
             problem(
                 str(given),
-                "no such file",
+                f"a folder without {FILE_NAME}" if given.is_dir() else "no such file",
                 f"a corridor file or a folder with {FILE_NAME}",
                 "try `geomap new FOLDER`",
             )

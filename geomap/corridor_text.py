@@ -86,7 +86,8 @@ def template(root: type[BaseModel]) -> str:
             default = entry.get_default(call_default_factory=True, validated_data={})
             value = _toml_value(entry.examples[0] if entry.examples else default)
             mark = off if entry.is_required() else "# "
-            lines.append(f"{mark}{key} = {value}".ljust(48) + f"  # {entry.description}")
+            needed = " (required in this section)" if off and entry.is_required() else ""
+            lines.append(f"{mark}{key} = {value}".ljust(48) + f"  # {entry.description}{needed}")
     return "\n".join(lines) + "\n"
 
 

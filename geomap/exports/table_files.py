@@ -62,7 +62,7 @@ def save(table: pd.DataFrame, path: Path, name: str) -> dict[str, str]:
                 new.chmod(path.stat().st_mode & 0o7777)
             publish([new], path.parent)
     except ImportError:
-        remedy = "install it with: pip install 'geomap[arrow]', or choose another ending"
+        remedy = "install it with: pip install 'pyarrow', or choose another ending"
         raise InputError(problem(str(path), "Parquet without pyarrow", "Parquet with pyarrow", remedy)) from None
     except OSError as error:
         cause = error.__cause__ if isinstance(error, OutputInUseError) else error

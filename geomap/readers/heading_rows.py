@@ -10,11 +10,12 @@ from geomap.errors import UsageError, problem
 from geomap.readers.headings import Reading, UnknownUnit, reading, reading_as
 from geomap.readers.options import TableOptions
 from geomap.readers.sheets import HEADING_SEARCH_ROWS, column_letters
-from geomap.readers.sieves import size_from_heading
+from geomap.readers.sieves import FINES_MM, is_percent_fines, size_from_heading
 from geomap.readers.spelling import is_unit, key, plain
 from geomap.tables import schema
 from geomap.tables.schema import Layout, passing_column
 
+FINES_COLUMN = passing_column(FINES_MM)
 MIN_LIKENESS = 0.6  # of difflib, for "did you mean"
 
 # Words that stand in a units row over columns without a unit.
@@ -66,7 +67,10 @@ def mapping(layout: Layout, options: TableOptions, place: str) -> dict[str, str]
 
 
 def readings(row: Sequence[str], layout: Layout, mapped: Mapping[str, str]) -> list[Reading | UnknownUnit | None]:
-    """Return what each cell of a row means as a heading; the user's own headings go first."""
+    """Return what each cell of a row means as a heading; the user's own headings go first.
+
+    Percent fines counts only where no other heading means percent passing 0.075 mm: many sheets have both.
+    """
     by_heading = {key(heading): column for column, heading in mapped.items()}
     result: list[Reading | UnknownUnit | None] = []
     for cell in row:
@@ -77,6 +81,9 @@ def readings(row: Sequence[str], layout: Layout, mapped: Mapping[str, str]) -> l
         else:
             found = reading(cell, layout)
             result.append(None if found is not None and found.column in mapped else found)
+    fines = [index for index, item in enumerate(result) if item is not None and item.column == FINES_COLUMN]
+    if not all(is_percent_fines(row[index]) for index in fines):
+        return [None if index in fines and is_percent_fines(row[index]) else item for index, item in enumerate(result)]
     return result
 
 

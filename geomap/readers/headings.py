@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from functools import cache, lru_cache
 from types import MappingProxyType
 
-from geomap.readers.sieves import size_from_heading
+from geomap.readers.sieves import FINES_MM, is_percent_fines, size_from_heading
 from geomap.readers.spelling import key, plain, unit_factor, unit_key
 from geomap.tables import schema
 from geomap.tables.schema import Column, Layout, passing_column
@@ -103,6 +103,8 @@ def _reading(heading: str, layout_name: str) -> Reading | UnknownUnit | None:
         return Reading(name, house, 1.0) if is_canonical else Reading(name)
     if layout.takes_passing and (size := size_from_heading(text)) is not None:
         return Reading(passing_column(size), "%", 1.0)
+    if layout.takes_passing and is_percent_fines(text):
+        return Reading(passing_column(FINES_MM), "%", 1.0)
     return unknown
 
 

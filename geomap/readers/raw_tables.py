@@ -15,7 +15,7 @@ from geomap.readers.cell_conventions import with_decimal_points, with_sizes_in_m
 from geomap.readers.heading_rows import fit, is_units_row
 from geomap.readers.options import TableOptions
 from geomap.readers.sheets import Place, Sheet, filled
-from geomap.readers.table_headings import UNITS_ROW, Headings, resolve
+from geomap.readers.table_headings import UNITS_ROW, Headings, resolve, unread
 from geomap.tables import schema
 from geomap.tables.findings import Check, together
 from geomap.tables.raw import RawTable
@@ -76,8 +76,10 @@ def from_sheet(sheet: Sheet, layout: Layout, options: TableOptions) -> RawTable:
     nameless = {label for label, cell in zip(headings.labels, row, strict=True) if not cell.strip()}
     empty = {label for label in nameless if not original[label].str.strip().astype(bool).any()}
     original = original.loc[:, [label not in empty for label in headings.labels]]
-    unread = tuple(x for x in headings.labels if x in headings.unrecognized or x in nameless - empty)
-    table = raw_table(original, layout, replace(headings, unrecognized=unread), sheet.place(), notes)
+    left = tuple(x for x in headings.labels if x in headings.unrecognized or x in nameless - empty)
+    headings = replace(headings, unrecognized=left)
+    notes.append(unread(headings, layout, sheet.place(top)))
+    table = raw_table(original, layout, headings, sheet.place(), notes)
     return with_conventions(table, sheet.delimiter)
 
 

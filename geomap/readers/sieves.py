@@ -20,6 +20,7 @@ MAX_SIZE_MM = 3000.0  # the largest size that columns.toml allows
 
 # "P200" without a unit names a US sieve. Only the sieves that ASTM D2487 and AASHTO M 145 rest on are taken so:
 # for the others, "P20" may as well be 20 mm.
+FINES_MM = 0.075  # the size below which soil is fines; ASTM D2487-17, section 3
 NUMBERS_WITHOUT_UNIT = ("4", "10", "40", "200")
 
 _GAP = r"(?:[\s_\-]|\.(?!\d))*"  # a dot before a digit belongs to the number
@@ -37,6 +38,9 @@ _BEFORE = re.compile(
 )
 _AFTER = re.compile(
     rf"(?:[\s._\-,]*(?:[(\[]\s*{_PERCENT}?\s*(?:passing|finer)?\s*[)\]]|sieve|passing|finer|{_PERCENT}))+$"
+)
+_FINES = re.compile(
+    rf"{_PERCENT}[\s._\-]*fines(?:[\s._\-]+content)?|fines(?:[\s._\-]+content)?[\s._\-,]*[(\[]?\s*{_PERCENT}\s*[)\]]?"
 )
 _SHORT = re.compile(rf"p{_GAP}(\d+\.\d+|\d+)")
 
@@ -142,6 +146,17 @@ def size_from_heading(heading: str) -> float | None:
     if in_words:
         return _metric(f"{in_words.group(1)}.{in_words.group(2)}", in_words.group(3))
     return size_from_inches(rest) if "/" in rest else _size_without_unit(rest, NUMBERS_WITHOUT_UNIT[-1:])
+
+
+def is_percent_fines(heading: str) -> bool:
+    """Return whether a heading means the percentage of fines: what passes the 0.075 mm sieve (ASTM D2487-17, 3.1).
+
+    Examples
+    --------
+    >>> [is_percent_fines(h) for h in ("% Fines", "Fines (%)", "fines_pct", "Fines content, %", "Fines", "% fine sand")]
+    [True, True, True, True, False, False]
+    """
+    return _FINES.fullmatch(plain(heading)) is not None
 
 
 def _size_without_unit(number: str, taken: tuple[str, ...]) -> float | None:

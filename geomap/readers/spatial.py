@@ -24,7 +24,7 @@ from geomap.readers.options import TableOptions
 from geomap.readers.raw_tables import ROW_INDEX, raw_table, with_conventions
 from geomap.readers.sheets import Place, chosen_part
 from geomap.readers.spatial_files import GEOJSON_SUFFIXES
-from geomap.readers.table_headings import resolve
+from geomap.readers.table_headings import resolve, unread
 from geomap.tables import schema
 from geomap.tables.findings import Check, together
 from geomap.tables.raw import Heading, RawTable
@@ -110,7 +110,7 @@ def read_table(path: Path, layout: str, options: TableOptions, has_layers: bool 
     labels = [str(name) for name in layer.fields.columns]
     headings = resolve(labels, wanted, options, place, given=given)
     original = layer.fields.set_axis(list(headings.labels), axis="columns")
-    notes = [layer.findings, headings.findings]
+    notes = [layer.findings, headings.findings, unread(headings, wanted, place, given)]
     table = raw_table(original, wanted, headings, place, notes, layer.crs)
     table = with_conventions(table, delimiter="")
     if layer.geometry is None:

@@ -11,11 +11,13 @@ import pandas as pd
 
 from geomap.errors import InputError, UsageError, problem
 from geomap.readers.heading_messages import check_mapped, missing_text, units_in_words
-from geomap.readers.heading_rows import mapping, readings, unique_labels
+from geomap.readers.heading_rows import FINES_COLUMN, mapping, readings, unique_labels
 from geomap.readers.headings import Reading, UnknownUnit, stated_unit
 from geomap.readers.options import TableOptions
 from geomap.readers.sheets import Place, column_letters
+from geomap.readers.sieves import is_percent_fines
 from geomap.readers.spelling import is_unit, key, plain, unit_factor
+from geomap.readers.unread_headings import about_unread
 from geomap.tables import schema
 from geomap.tables.findings import Check, together
 from geomap.tables.raw import Heading
@@ -37,6 +39,12 @@ UNITS_ROW = Check("units row", "accept", "units in the headings", "row beneath t
 REPEATED = Check("heading twice", "accept", "each heading once", "not used; a number was added to its name")
 SIEVE_NUMBER = Check(
     "sieve number", "accept", "a size with its unit", "read as a US sieve number; write the size in mm if it is one"
+)
+FINES = Check(
+    "percent fines",
+    "convert",
+    "percent passing 0.075 mm",
+    "taken as percent passing 0.075 mm (No. 200), the fines of ASTM D2487; name the size if it is another",
 )
 
 
@@ -113,6 +121,13 @@ def resolve(
     return Headings(labels, taken, unrecognized, together(notes))
 
 
+def unread(headings: Headings, layout: Layout, place: Place, given: Collection[str] = ()) -> pd.DataFrame:
+    """Return findings about the headings that were not read and about which `resolve` said nothing yet."""
+    said = set(headings.findings["heading"].dropna())
+    left = [label for label in headings.unrecognized if label not in said]
+    return about_unread(left, headings.taken, layout, place, given)
+
+
 def _positions(
     row: Sequence[str], means: Sequence[Reading | UnknownUnit | None], place: Place
 ) -> dict[str, tuple[int, Reading]]:
@@ -173,6 +188,8 @@ def _notes(
             parts.append(UNIT_NOT_KNOWN.row(label, item.unit, **place.columns))
         elif cell.strip() and cell != label:
             parts.append(REPEATED.row(label, cell, **place.columns))
+        elif item is not None and item.column == FINES_COLUMN and is_percent_fines(cell):
+            parts.append(FINES.row(label, cell, **place.columns))
         elif item is not None and item.column.startswith("passing_") and _SIEVE_NUMBER.fullmatch(key(cell)):
             parts.append(SIEVE_NUMBER.row(label, cell, **place.columns))
     return parts

@@ -10,7 +10,7 @@ from geomap.errors import InputError, UsageError
 from geomap.readers import files
 from tests.unit.readers.reading import cells, checks, read, text_file
 
-TEXT = "boring,top,description\nSö1,1.5,Lehm µ ½\n"
+TEXT = "boring,top,description,LL\nSö1,1.5,Lehm µ ½,30\n"
 
 
 @pytest.mark.parametrize("encoding", ["utf-8", "utf-8-sig", "utf-16", "utf-32"])
@@ -29,7 +29,7 @@ def test_utf_16_is_read_in_both_byte_orders(tmp_path: Path, mark: bytes) -> None
 
 
 def test_windows_text_is_read_and_said_so(tmp_path: Path) -> None:
-    table = read(text_file(tmp_path, "boring,top,description\nSö1,1.5,8 ± 10 €\n", encoding="cp1252"))
+    table = read(text_file(tmp_path, "boring,top,description,LL\nSö1,1.5,8 ± 10 €,30\n", encoding="cp1252"))
     assert cells(table)["description"] == ["8 ± 10 €"]
     assert checks(table) == {"text encoding": "accept"}
 

@@ -165,18 +165,19 @@ def test_a_table_that_requires_no_heading_still_needs_one_that_is_known(tmp_path
 
 
 def test_an_unknown_unit_on_a_column_that_is_not_required_is_a_finding(tmp_path: Path) -> None:
-    table = read(text_file(tmp_path, "boring,top,UCS (bar)\nBH1,1,2\n"))
+    table = read(text_file(tmp_path, "boring,top,LL,UCS (bar)\nBH1,1,30,2\n"))
     assert "unconfined_kpa" not in table.cells
     assert table.unrecognized == ("UCS (bar)",)
     assert checks(table) == {"unit of the heading not known": "hold_out"}
 
 
 def test_headings_that_mean_nothing_are_kept_and_listed(tmp_path: Path) -> None:
-    table = read(text_file(tmp_path, "boring,Weather,top,,Weather\nBH1,rain,1,odd,sun\nBH2,,2,,\n"))
-    assert list(table.original) == ["boring", "Weather", "top", "column D", "Weather (2)"]
+    table = read(text_file(tmp_path, "boring,Weather,top,,Weather,LL\nBH1,rain,1,odd,sun,30\nBH2,,2,,,\n"))
+    assert list(table.original) == ["boring", "Weather", "top", "column D", "Weather (2)", "LL"]
     assert table.unrecognized == ("Weather", "column D", "Weather (2)")
     assert table.original["column D"].tolist() == ["odd", ""]
-    assert checks(table) == {"heading twice": "accept"}
+    assert checks(table) == {"heading twice": "accept", "headings not read": "accept"}
+    assert table.findings["found"].tolist() == ["Weather", "'Weather', 'column D'"]
 
 
 def test_a_sieve_by_number_without_a_sign_is_noted(tmp_path: Path) -> None:

@@ -12,7 +12,9 @@ import pandas as pd
 from geomap.errors import InputError, problem
 from geomap.readers import delimited, workbooks
 from geomap.readers.cell_conventions import with_decimal_points, with_sizes_in_mm
-from geomap.readers.heading_rows import fit, is_units_row
+from geomap.readers.footers import FOOTER, footer_rows
+from geomap.readers.heading_groups import HeadingRow, check_no_second_row, heading_row
+from geomap.readers.heading_rows import is_units_row
 from geomap.readers.options import TableOptions
 from geomap.readers.sheets import Place, Sheet, filled
 from geomap.readers.table_headings import UNITS_ROW, Headings, resolve, unread
@@ -25,6 +27,13 @@ ROW_INDEX = "row_number"
 SHOWN_ROWS = 5  # row numbers that a message shows
 
 HEADING_ROW = Check("rows above the headings", "accept", "headings in row 1", "these rows were not read")
+
+TWO_ROWS = Check(
+    "headings in two rows",
+    "accept",
+    "headings in one row",
+    "this row was joined with the one beneath; see that each column is taken for what it is",
+)
 
 
 def from_delimited(path: Path, layout: str, options: TableOptions) -> RawTable:
@@ -41,8 +50,8 @@ def from_workbook(path: Path, layout: str, options: TableOptions) -> RawTable:
 
 def _score(layout: Layout, options: TableOptions) -> Callable[[Sequence[Sequence[str]]], tuple[int, ...]]:
     def score(rows: Sequence[Sequence[str]]) -> tuple[int, ...]:
-        is_whole, count, _ = fit(rows, layout, options)
-        return int(is_whole), count
+        found = heading_row(rows, layout, options)
+        return int(found.is_whole), found.count
 
     return score
 
@@ -56,20 +65,25 @@ def from_sheet(sheet: Sheet, layout: Layout, options: TableOptions) -> RawTable:
         A required heading is missing, headings contradict each other, or a row of a text file has more cells than
         there are headings.
     """
-    _, count, top = fit(sheet.rows, layout, options)
-    if not count:  # nothing answers: the first filled row is shown as what was found
+    where = heading_row(sheet.rows, layout, options)
+    if not where.count:  # nothing answers: the first filled row is shown as what was found
         top = next(index for index, row in enumerate(sheet.rows) if filled(row))
+        where = HeadingRow(list(sheet.rows[top]), top, top, is_whole=False, count=0)
+    top = where.last
     beneath = sheet.rows[top + 1] if len(sheet.rows) > top + 1 else []
     units = beneath if is_units_row(beneath) else []
     start = top + 1 + bool(units)
     widths = [filled(row) for row in sheet.rows[start:]]
     used = [index for index, width in enumerate(widths, start) if width]
-    row = list(sheet.rows[top])
+    footers = footer_rows(sheet.rows, used, layout)
+    used = used[: len(used) - len(footers)]
+    row = list(where.cells)
     if not sheet.delimiter:  # in a workbook notes may stand beside the table
         row += [""] * (max(widths, default=0) - len(row))
     headings = resolve(row, layout, options, sheet.place(top), units)
+    check_no_second_row(sheet.rows, where, layout, options, sheet.place(top + 1))
     _check_lengths(sheet, len(row), start, widths)
-    notes = [sheet.findings, headings.findings, *_about_rows(sheet, top, units)]
+    notes = [sheet.findings, headings.findings, *_about_rows(sheet, where, units, footers)]
     filled_rows = [_of_length(sheet.rows[index], len(row)) for index in used]
     original = pd.DataFrame(filled_rows, columns=pd.Index(headings.labels, dtype=object), dtype=object).astype("string")
     original.index = pd.Index(np.array(used, dtype=np.int64) + 1, name=ROW_INDEX)
@@ -97,16 +111,22 @@ def _of_length(row: Sequence[str], length: int) -> Sequence[str]:
     return row if len(row) == length else [*row[:length], *[""] * (length - len(row))]
 
 
-def _about_rows(sheet: Sheet, top: int, units: Sequence[str]) -> list[pd.DataFrame]:
-    """Return findings about what stands above and just beneath the headings."""
+def _about_rows(sheet: Sheet, where: HeadingRow, units: Sequence[str], footers: Sequence[int]) -> list[pd.DataFrame]:
+    """Return findings about rows that are no rows of the table, and about headings in two rows."""
     notes = []
-    above = [index for index in range(top) if filled(sheet.rows[index])]
+    above = [index for index in range(where.first) if filled(sheet.rows[index])]
     if above:
         cells = [cell.strip() for cell in sheet.rows[above[0]] if cell.strip()]
         notes.append(HEADING_ROW.row("", "; ".join(cells), **sheet.place(above[0]).columns))
+    if where.first < where.last:
+        found = "; ".join(" ".join(cell.split()) for cell in sheet.rows[where.first] if cell.strip())
+        notes.append(TWO_ROWS.row("", found, **sheet.place(where.first).columns))
     if units:
         found = ", ".join(cell.strip() for cell in units if cell.strip())
-        notes.append(UNITS_ROW.row("", found, **sheet.place(top + 1).columns))
+        notes.append(UNITS_ROW.row("", found, **sheet.place(where.last + 1).columns))
+    if footers:
+        lines = [" ".join(cell.strip() for cell in sheet.rows[index] if cell.strip()) for index in footers]
+        notes.append(FOOTER.row("", "; ".join(lines), **sheet.place(footers[0]).columns))
     return notes
 
 

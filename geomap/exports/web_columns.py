@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 ALPHABET = "0123456789ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz"
 MISSING = "-"
+ROUNDING = 1.5  # percent: what rounding in the tables may take from many shares of one row
 
 _CODES = np.array([MISSING, *ALPHABET])
 _PERCENTS = np.array(["--", *(np.base_repr(n, 36).lower().rjust(2, "0") for n in range(101))])
@@ -60,6 +61,28 @@ def characters(codes: NDArray[np.int64]) -> str:
     '0B-'
     """
     return "".join(_CODES[codes + 1].tolist())
+
+
+def whole_percents(shares: NDArray[np.float64], row: NDArray[np.int64]) -> NDArray[np.float64]:
+    """Return shares as shares of whole percents, those of one `row` together 100 where they are together 1.
+
+    Rounding each by itself would leave 99 or 101. The largest remainders are rounded up, the others down.
+
+    Examples
+    --------
+    >>> whole_percents(np.array([1 / 3, 1 / 3, 1 / 3, 0.4, 0.3]), np.array([0, 0, 0, 1, 1])).tolist()
+    [0.34, 0.33, 0.33, 0.4, 0.3]
+    """
+    percent = np.round(np.nan_to_num(shares) * 100, 6)
+    whole = np.floor(percent)
+    rows = int(row.max(initial=-1)) + 1
+    total, floors = np.bincount(row, percent, rows), np.bincount(row, whole, rows)
+    spare = np.where(np.abs(total - 100) < ROUNDING, 100, np.round(total)) - floors
+    order = np.lexsort((whole - percent, row))
+    first = np.searchsorted(row[order], np.arange(rows))
+    rank = np.empty(len(row), dtype=np.int64)
+    rank[order] = np.arange(len(row)) - first[row[order]]
+    return np.where(np.isnan(shares), np.nan, (whole + (rank < spare[row])) / 100)
 
 
 def percents(values: object) -> str:

@@ -34,7 +34,7 @@ SCRIPTS = (
     *("text.js", "chainage.js", "data.js", "place.js", "colors.js"),
     *("plan_labels.js", "plan.js"),
     *("profile_scale.js", "profile_cells.js", "profile_marks.js", "profile_bands.js", "profile.js", "profile_input.js"),
-    *("stretch.js", "findings.js", "boring.js", "summary.js", "legend.js", "print.js", "start.js"),
+    *("stretch.js", "findings.js", "boring.js", "summary.js", "legend.js", "print.js", "go_to.js", "start.js"),
 )
 STYLES = ("page.css", "plan.css", "profile.css", "cards.css", "narrow.css", "print.css")
 EXECUTABLE_SCRIPTS = 2  # Leaflet; the map by folium with our own scripts

@@ -133,6 +133,8 @@ def summary(results: Results) -> dict[str, Any]:
             for word in SUITABILITY
         ],
         "statement": statement(results),
+        "limits": results.run_value("verdict limits"),
+        "groundLevels": results.run_value("ground levels"),
     }
 
 

@@ -19,8 +19,13 @@ from geomap.results import Results
 DEGREE_DIGITS = 7  # about 1 cm on the ground
 GRID_LINES = 9  # about as many coarse grid lines as the wider side of the plan may carry
 FINE_PER_COARSE = 5
-COARSE_MARGIN, FINE_MARGIN = 2.0, 0.25  # how far the grid reaches beyond the line, in sides of its box
-GRID_POINTS = 7  # vertices of one grid line: a straight line of the projection is a curve in degrees
+# How far the grid reaches beyond the line, in sides of its box: east and west for a low, wide frame around a line
+# that runs north, at one zoom level out.
+COARSE_MARGIN = (12.0, 2.0)
+FINE_MARGIN = (0.75, 0.25)
+# Vertices of one grid line, north and east: a straight line of the projection is a curve in degrees, and the lines
+# of equal northing are the long ones.
+GRID_POINTS = (5, 13)
 
 Floats = NDArray[np.float64]
 Degrees = Callable[[Floats, Floats], tuple[Floats, Floats]]
@@ -106,20 +111,21 @@ def grid(bounds: Floats, to_degrees: Degrees, digits: int) -> list[dict[str, Any
     side = max(right - left, top - bottom)
     coarse = _round_spacing(side / GRID_LINES)
     lines = []
-    for spacing, margin in ((coarse, COARSE_MARGIN * side), (coarse / FINE_PER_COARSE, FINE_MARGIN * side)):
+    for spacing, (wide, high) in ((coarse, COARSE_MARGIN), (coarse / FINE_PER_COARSE, FINE_MARGIN)):
         box = [
-            np.floor((left - margin) / coarse) * coarse,
-            np.floor((bottom - margin) / coarse) * coarse,
-            np.ceil((right + margin) / coarse) * coarse,
-            np.ceil((top + margin) / coarse) * coarse,
+            np.floor((left - wide * side) / coarse) * coarse,
+            np.floor((bottom - high * side) / coarse) * coarse,
+            np.ceil((right + wide * side) / coarse) * coarse,
+            np.ceil((top + high * side) / coarse) * coarse,
         ]
         for axis in (0, 1):
             values = np.arange(box[axis], box[axis + 2] + spacing / 2, spacing)
             if spacing != coarse:
                 values = values[np.abs(values / coarse - np.round(values / coarse)) > 1e-6]
-            along = np.linspace(box[1 - axis], box[3 - axis], GRID_POINTS)
+            along = np.linspace(box[1 - axis], box[3 - axis], GRID_POINTS[axis])
             drawn = [_grid_line(axis, value, along, to_degrees, digits) for value in values]
-            lines += [line | {"coarse": spacing == coarse} for line in drawn]
+            # Far from a wide corridor the projection may have no place on the globe.
+            lines += [line | {"coarse": spacing == coarse} for line in drawn if None not in line["lat"] + line["lon"]]
     return lines
 
 

@@ -12,13 +12,14 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from geomap.exports.groups import SYMBOL_COLUMN, first_system
-from geomap.exports.web_columns import ALPHABET, characters, numbers, percents, positions, words
+from geomap.exports.web_columns import ALPHABET, characters, numbers, percents, positions, whole_percents, words
 from geomap.results import Results
 
 SUITABILITY = ("suitable", "treat", "unsuitable", "not assessed")
 EVIDENCE = ("observed", "inferred", "no data")
 MATERIAL = ("natural", "mixed", "imported")
-LEAST_SHARE = 0.005  # up to here a share rounds to no percent
+NOTHING = "00"  # a share that rounds to no percent
+SOURCE_TEXTS = ("boring", "sample", "lab_sheet", "file", "sheet")
 TRACE_ROWS = 12  # samples named for one step; the page says how many more there are and their weight
 
 
@@ -50,7 +51,7 @@ def steps(results: Results, symbols: Sequence[str]) -> dict[str, Any]:
         "probability": percents(table["probability"]),
         "aashto": words(table["aashto_group"]),
         "suitability": characters(positions(table["suitability"], SUITABILITY)),
-        **{f"p{k}": percents(table[f"p_{word.replace(' ', '_')}"]) for k, word in enumerate(SUITABILITY)},
+        **verdict_shares(table),
         "evidence": characters(positions(table["evidence"], EVIDENCE)),
         "cbr": {part: numbers(table[f"cbr_{part}_pct"], 1) for part in ("low", "mid", "high")},
         "cbrBasis": words(table["cbr_basis"]),
@@ -59,6 +60,14 @@ def steps(results: Results, symbols: Sequence[str]) -> dict[str, Any]:
         "samplesUsed": numbers(table["samples_used"], 0),
         "rule": words(table["rule"]),
     }
+
+
+def verdict_shares(table: pd.DataFrame) -> dict[str, str]:
+    """Return the percents of each verdict of a step; those of one step together 100."""
+    shares = table[[f"p_{word.replace(' ', '_')}" for word in SUITABILITY]].to_numpy(float)
+    row = np.repeat(np.arange(len(table)), len(SUITABILITY))
+    whole = whole_percents(shares.ravel(), row).reshape(shares.shape)
+    return {f"p{k}": percents(whole[:, k]) for k in range(len(SUITABILITY))}
 
 
 def cells(results: Results, system: str, symbols: Sequence[str]) -> dict[str, Any]:
@@ -100,15 +109,15 @@ def odds(texts: pd.Series, symbols: Sequence[str]) -> list[str]:
     """
     codes, unique = pd.factorize(texts)
     place = dict(zip(symbols, ALPHABET, strict=False))
-    pairs = [
-        sorted([pair for pair in row.items() if pair[1] > LEAST_SHARE], key=itemgetter(1), reverse=True)
-        for row in _read_odds(unique)
-    ]
-    packed = percents([share for row in pairs for _, share in row])  # all at once: there are tens of thousands
+    rows = [sorted(row.items(), key=itemgetter(1), reverse=True) for row in _read_odds(unique)]
+    row_of = np.repeat(np.arange(len(rows)), [len(row) for row in rows])
+    # All at once: there are tens of thousands.
+    packed = percents(whole_percents(np.array([share for row in rows for _, share in row], dtype=float), row_of))
     at = 0
     short: list[str] = [""]
-    for row in pairs:
-        short.append("".join(place[symbol] + packed[at + 2 * k : at + 2 * k + 2] for k, (symbol, _) in enumerate(row)))
+    for row in rows:
+        parts = [(place[symbol], packed[at + 2 * k : at + 2 * k + 2]) for k, (symbol, _) in enumerate(row)]
+        short.append("".join(symbol + percent for symbol, percent in parts if percent != NOTHING))
         at += 2 * len(row)
     return [short[code + 1] for code in codes.tolist()]
 
@@ -125,16 +134,16 @@ def ground(results: Results) -> dict[str, Any]:
 
 
 def trace(results: Results) -> dict[str, Any]:
-    """Return the records behind the steps: each record once, then step after step their numbers and weights.
+    """Return the specimens behind the steps: each once, then step after step their numbers and weights.
 
-    The weightiest `TRACE_ROWS` of a step are named, ``count`` of them for each step; ``more`` and ``rest`` give the
-    number and the weight of the others. Weights are in thousandths.
+    A specimen may have several rows, one for each test: they share one weight, and their names, lab sheets and row
+    numbers stand side by side. The weightiest `TRACE_ROWS` of a step are named, ``count`` of them for each step;
+    ``more`` and ``rest`` give the number and the weight of the others. Weights are in thousandths.
     """
     table = results.tables["trace"].reset_index(drop=True)
-    identity = ["boring", "sample", "top_depth_m", "base_depth_m", "lab_sheet", "file", "sheet", "row_number"]
-    record = table.groupby(identity, dropna=False, sort=False).ngroup()
-    records = table.loc[~record.duplicated(), identity]
-    table = table.assign(record=record).sort_values(["step", "weight"], ascending=[True, False], kind="stable")
+    record, records = specimens(table)
+    table = table.assign(record=record).drop_duplicates(["step", "record"])
+    table = table.sort_values(["step", "weight"], ascending=[True, False], kind="stable")
     rank = table.groupby("step").cumcount()
     order = results.tables["subgrade"]["step"].astype("int64")
     named, others = (table.loc[rows & table["step"].isin(order)] for rows in (rank < TRACE_ROWS, rank >= TRACE_ROWS))
@@ -147,13 +156,33 @@ def trace(results: Results) -> dict[str, Any]:
         "labSheet": words(records["lab_sheet"]),
         "file": words(records["file"]),
         "sheet": words(records["sheet"]),
-        "row": numbers(records["row_number"], 0),
+        "row": words(records["row_number"]),
         "count": named.groupby("step").size().reindex(order, fill_value=0).tolist(),
         "record": named["record"].tolist(),
         "weight": numbers(named["weight"] * 1000, 0),
         "more": rest.size().reindex(order, fill_value=0).tolist(),
         "rest": numbers(rest.sum().reindex(order, fill_value=0.0) * 1000, 0),
     }
+
+
+def specimens(trace: pd.DataFrame) -> tuple[pd.Series, pd.DataFrame]:
+    """Return the number of the specimen of each row of the trace, and one row for each specimen.
+
+    A row without a specimen stands for itself.
+    """
+    identity = [name for name in trace.columns if name not in ("step", "weight")]
+    row = trace.groupby(identity, dropna=False, sort=False).ngroup()
+    given = trace.get("specimen", pd.Series(np.nan, trace.index)).astype("Float64")
+    of = trace.assign(key=given.fillna(-1.0 - row)).groupby(["boring", "key"], dropna=False, sort=False).ngroup()
+    rows = trace.loc[~row.duplicated()]
+    by = rows.assign(row_number=rows["row_number"].astype("Int64").astype("string")).groupby(of, sort=True)
+    texts = {name: by[name].agg(_side_by_side) for name in (*SOURCE_TEXTS, "row_number")}
+    depths = {"top_depth_m": by["top_depth_m"].min(), "base_depth_m": by["base_depth_m"].max()}
+    return of, pd.DataFrame({**texts, **depths})
+
+
+def _side_by_side(texts: pd.Series) -> str | None:
+    return ", ".join(dict.fromkeys(texts.dropna().astype(str))) or None
 
 
 def _read_odds(texts: Iterable[str]) -> list[dict[str, float]]:

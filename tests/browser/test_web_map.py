@@ -3,12 +3,16 @@
 from __future__ import annotations
 
 import dataclasses
+import shutil
+import subprocess
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
 import numpy as np
+import pandas as pd
 import pytest
+import shapely
 
 from geomap.results import Results
 from geomap.tables import schema
@@ -210,6 +214,17 @@ def test_a_click_on_a_boring_in_the_profile_opens_its_card(page: Opened) -> None
 def test_a_boring_left_out_says_why(page: Opened) -> None:
     page.go_to("BH-4")
     assert "Left out: 118 m from the alignment, farther than half_width_m 75" in page.text("#boring")
+    assert "No samples and no layers of it were read" in page.text("#boring")
+
+
+def test_the_samples_of_a_boring_left_out_are_shown(open_page: Open, written: Write, results: Results) -> None:
+    samples = results.tables["samples"].copy()
+    samples.loc[samples.index[-1], ["boring", "status", "reason"]] = ["BH-4", "left out", "its boring is left out"]
+    page = open_page(written(dataclasses.replace(results, tables={**results.tables, "samples": samples})))
+    page.go_to("BH-4")
+    assert "What was read of it is shown below" in page.text("#boring")
+    assert str(samples["sample"].iloc[-1]) in page.text("#boring")
+    assert "left out: its boring is left out" in page.text("#boring")
 
 
 def test_go_to_finds_every_chainage_across_the_equation(page: Opened) -> None:
@@ -220,11 +235,27 @@ def test_go_to_finds_every_chainage_across_the_equation(page: Opened) -> None:
 
 
 def test_go_to_answers_what_does_not_exist(page: Opened) -> None:
-    page.go_to("12+325")  # swallowed by the equation: 12+300 is followed by 12+350
+    page.go_to("14+000")
     assert "No such chainage or boring" in page.text("#go-to-answer")
     assert "12+000 to 12+650" in page.text("#go-to-answer")
+    page.go_to("12+325")  # swallowed by the equation: 12+300 is followed by 12+350
+    assert page.text("#go-to-answer") == "There is no such chainage: the equation 12+300 = 12+350 skips it."
     page.go_to("12+360")
     assert page.text("#go-to-answer") == ""
+
+
+@pytest.mark.parametrize("typed", ["bh2", "BH 02", "bh-002", "Bh_2"])
+def test_go_to_finds_a_boring_as_people_type_it(page: Opened, typed: str) -> None:
+    page.go_to(typed)
+    assert page.text("#boring-title") == "Boring BH-2"
+
+
+def test_go_to_asks_where_a_name_fits_two_borings(open_page: Open, written: Write) -> None:
+    page = open_page(written(sample_results(first="bh 02")))
+    page.go_to("BH2")
+    assert page.text("#go-to-answer") == "Several borings are named so: bh 02, BH-2."
+    page.go_to("BH-2")  # as it is written, there is only one
+    assert page.text("#boring-title") == "Boring BH-2"
 
 
 def test_a_chainage_that_stands_twice_is_said(open_page: Open, written: Write, results: Results) -> None:
@@ -315,6 +346,37 @@ def test_findings_filter_by_severity(page: Opened) -> None:
     assert "75 m or nearer" in rows.first.inner_text()
 
 
+def test_a_finding_opens_its_boring(page: Opened) -> None:
+    page.page.locator("#findings summary").click()
+    page.page.get_by_role("button", name="BH-4", exact=True).first.click()
+    page.settle()
+    assert page.text("#boring-title") == "Boring BH-4"
+    assert page.box("#boring")["y"] < WIDTHS[1440]
+
+
+def test_the_shares_of_a_step_add_up_to_a_hundred(page: Opened) -> None:
+    for distance in range(5, STEPS * int(STEP_M), 70):
+        page.go_to(chainage(distance))
+        lists = page.page.locator("#stretch .share-list")
+        for k in range(lists.count()):
+            shares = [int(text.rstrip("%")) for text in lists.nth(k).locator("b").all_inner_texts()]
+            assert sum(shares) == 100
+
+
+def test_the_limits_of_the_verdicts_stand_beside_their_legend(
+    open_page: Open, written: Write, results: Results
+) -> None:
+    said = "unsuitable from probability 0.5; suitable only where unsuitable is below 0.1"
+    run = results.tables["run"]
+    run = pd.concat([run[run["key"] != "verdict limits"], pd.DataFrame({"key": ["verdict limits"], "value": [said]})])
+    page = open_page(written(dataclasses.replace(results, tables={**results.tables, "run": run})))
+    assert said not in page.text("#legend")
+    page.page.select_option("#color-by", "suitability")
+    assert said in page.text("#legend")
+    page.page.emulate_media(media="print")
+    assert said in page.text("#statement")
+
+
 def test_lengths_are_in_feet_where_the_corridor_is(open_page: Open, written: Write) -> None:
     page = open_page(written(sample_results(length_unit="ft")))
     assert page.text("#length") == "1,969 ft"  # 600 / 0.3048
@@ -334,6 +396,31 @@ def test_without_a_formation_the_page_shows_groups_by_depth(open_page: Open, wri
     assert "CL" in page.text("#legend")
     assert "formation" not in page.text("#line-keys")
     assert "Soil group" in page.text("#stretch")
+    assert page.complaints == []
+
+
+def test_a_formation_without_ground_levels_is_not_called_missing(
+    open_page: Open, written: Write, results: Results
+) -> None:
+    """The run then has no formation level at any step, and draws the ground at 0."""
+    judged = ["formation_level_m", "cut_fill_m", "subgrade_material"]
+    steps = schema.conform(results.tables["subgrade"].drop(columns=judged), schema.layers()["subgrade"])
+    ground = results.tables["ground"].assign(formation_level_m=np.nan, ground_level_m=0.0)
+    counts = pd.DataFrame({"table": ["formation"], "read": [60], "used": [60], "left_out": [0]})
+    run = pd.DataFrame({"key": ["ground levels"], "value": ["ground not known: nobody gave a level"]})
+    replaced = {
+        "subgrade": steps,
+        "ground": ground,
+        "counts": pd.concat([results.tables["counts"].query("table != 'formation'"), counts]),
+        "run": pd.concat([results.tables["run"].query("key != 'ground levels'"), run]),
+    }
+    page = open_page(written(dataclasses.replace(results, tables={**results.tables, **replaced})))
+    said = page.text("#lengths")
+    assert "A formation was given" in said
+    assert "ground not known: nobody gave a level" in said
+    page.point(0.5)
+    assert "Ground level not known" in page.text("#stretch")
+    assert page.page.input_value("#vertical") == "depth"
     assert page.complaints == []
 
 
@@ -362,6 +449,11 @@ def test_hostile_names_are_shown_and_do_nothing(
 def test_a_finger_moves_the_profile_and_opens_a_place(open_page: Open, large: Path) -> None:
     page = open_page(large, 390, has_touch=True, is_mobile=True)
     page.page.locator("#profile").scroll_into_view_if_needed()
+    assert "of 8.00 km: drag for more" in page.text("#part")
+    assert float(page.text("#exaggeration").split()[-1]) <= 100
+    page.page.click("#zoom-all")
+    page.settle()
+    assert not page.page.locator("#part").is_visible()
     box = page.box("#profile")
     page.page.touchscreen.tap(box["x"] + 0.5 * box["width"], box["y"] + 0.3 * box["height"])
     page.settle()
@@ -369,11 +461,105 @@ def test_a_finger_moves_the_profile_and_opens_a_place(open_page: Open, large: Pa
     assert page.page.locator("#stretch").is_visible()
 
 
+def ink(pdf: Path, sheet: int, top: float, bottom: float) -> float:
+    """Return the share of pixels between two heights of a printed sheet that are neither white nor gray."""
+    picture = pdf.with_suffix("")
+    page = ["-f", str(sheet), "-l", str(sheet), "-singlefile"]
+    subprocess.run(["pdftoppm", "-r", "40", *page, str(pdf), str(picture)], check=True)
+    raw = picture.with_suffix(".ppm").read_bytes()
+    magic, width, height, _, pixels = raw.split(maxsplit=4) if raw[:2] == b"P6" else (b"", b"", b"", b"", b"")
+    assert magic == b"P6"
+    size = int(width) * int(height) * 3
+    colors = np.frombuffer(pixels[-size:], dtype=np.uint8).reshape(int(height), int(width), 3).astype(int)
+    part = colors[int(top * len(colors)) : int(bottom * len(colors))]
+    return float((part.max(axis=2) - part.min(axis=2) > 40).mean())
+
+
+PAPERS = {
+    "as_the_page_asks": {"prefer_css_page_size": True},
+    "a4": {"format": "A4"},
+    "a3": {"format": "A3", "landscape": True},
+}
+
+
+@pytest.mark.skipif(shutil.which("pdftoppm") is None, reason="no pdftoppm on this machine")
+@pytest.mark.parametrize("paper", PAPERS)
+def test_the_printed_sheet_holds_plan_and_profile(open_page: Open, large: Path, tmp_path: Path, paper: str) -> None:
+    """The soil colors are looked for where the profile stands: canvases can be lost on the way to paper."""
+    page = open_page(large)
+    page.page.select_option("#color-by", "group")
+    page.settle()
+    pdf = tmp_path / "sheet.pdf"
+    page.page.pdf(path=pdf, print_background=True, **PAPERS[paper])
+    assert ink(pdf, 1, 0.62, 0.85) > 0.15  # the section
+    assert ink(pdf, 1, 0.3, 0.5) > 0.002  # the line on the plan
+    assert ink(pdf, 2, 0.5, 1.0) < 0.01  # findings, not the rest of the profile
+    assert page.complaints == []
+    page.point(0.5)  # and the screen is as it was
+    assert page.page.locator("#stretch").is_visible()
+    assert page.page.evaluate("document.getElementById('cards').parentElement.className") == "workspace"
+
+
 def test_the_printed_sheet_keeps_the_drawings_and_drops_the_tools(open_page: Open, large: Path) -> None:
     page = open_page(large)
     page.page.emulate_media(media="print")
     page.settle()
-    assert page.page.locator("#profile").is_visible()
+    sheet, profile = page.box(".sheet"), page.box(".profile")
+    assert profile["y"] + profile["height"] <= sheet["y"] + sheet["height"]
+    assert page.box(".plan")["height"] > 250
     assert page.page.locator("#cautions").is_visible()
     assert not page.page.locator("#go-to").is_visible()
     page.shot("print")
+    page.page.emulate_media(media="screen")
+    page.settle()
+    assert page.page.locator("#go-to").is_visible()
+
+
+def test_an_open_card_is_printed_after_the_sheet(open_page: Open, large: Path) -> None:
+    page = open_page(large)
+    page.go_to("BH-12")
+    page.page.emulate_media(media="print")
+    page.settle()
+    assert page.page.locator("#boring").is_visible()
+    assert page.box("#boring")["y"] >= page.box(".sheet")["y"] + page.box(".sheet")["height"]
+
+
+@pytest.mark.parametrize("width", [1440, 1024])
+def test_the_grid_reaches_the_frame_of_a_wide_plan(open_page: Open, written: Write, width: int) -> None:
+    """A corridor that runs north fills little of the width; values of northing stand at the left edge."""
+    page = open_page(written(northward()), width)
+    assert page.page.locator(".grid-N").count() >= 3
+    frame = page.box(".plan")
+    at = sorted(place["x"] for place in (label.bounding_box() for label in page.page.locator(".grid-E").all()))
+    steps = np.diff(at)
+    assert at[0] - frame["x"] < 60 + steps.max()
+    assert frame["x"] + frame["width"] - at[-1] < 100 + steps.max()
+
+
+@pytest.mark.parametrize("width", [1440, 1024])
+def test_the_bar_of_the_profile_stays_in_one_row(open_page: Open, large: Path, width: int) -> None:
+    page = open_page(large, width)
+    assert page.box(".profile .bar")["height"] < 45
+    assert (
+        page.page.evaluate(
+            "(({ scrollWidth, clientWidth }) => scrollWidth - clientWidth)(document.querySelector('.profile .bar'))"
+        )
+        <= 0
+    )
+
+
+def northward() -> Results:
+    """The constructed corridor, turned to run north."""
+    results = large_results()
+    tables = {
+        name: table.assign(geometry=[None if g is None else turned(g) for g in table["geometry"]])
+        for name, table in results.tables.items()
+        if "geometry" in table.columns
+    }
+    return dataclasses.replace(results, tables={**results.tables, **tables})
+
+
+def turned(shape: shapely.Geometry) -> shapely.Geometry:
+    """Return a shape with its eastings and northings about the start of the line exchanged."""
+    start = np.array([431_000.0, 5_623_000.0])
+    return shapely.transform(shape, lambda xy: start + (xy - start)[:, ::-1])

@@ -124,7 +124,9 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
       block(item, 40, 54, strata.top[row], strata.base[row] ?? depth, 60);
     }
     let last = -99;
-    const drawn = data.samplesOf[number].filter((row) => samples.top[row] !== null && samples.used[row] !== 0);
+    // Of a boring that is left out, everything is; its log is still what was found in the hole.
+    const all = borings.used[number] !== 1;
+    const drawn = data.samplesOf[number].filter((row) => samples.top[row] !== null && (all || samples.used[row] !== 0));
     for (const row of drawn) {
       const base = samples.base[row] ?? samples.top[row];
       const item = samples.group[row] < 0 ? legend.unknown : legend.groups[samples.group[row]];
@@ -184,6 +186,11 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
     }
   }
 
+  function leftOutNote(number) {
+    const count = data.samplesOf[number].length + data.strataOf[number].length;
+    return count ? "What was read of it is shown below and bears on no step." : "No samples and no layers of it were read.";
+  }
+
   return {
     show(number) {
       const used = borings.used[number] === 1;
@@ -192,7 +199,7 @@ function makeBoringCard(data, chainage, lengths, findings, stretchCard) {
       fill(
         "boring",
         element("div", { class: "card-head" }, element("h2", { tabindex: "-1", id: "boring-title" }, "Boring ", element("b", null, isolated(borings.name[number]))), close),
-        used ? null : element("p", { class: "notice" }, "Left out: ", isolated(borings.reason[number] || "no reason given")),
+        used ? null : element("p", { class: "notice" }, "Left out: ", isolated(borings.reason[number] || "no reason given"), `. ${leftOutNote(number)}`),
         element(
           "dl",
           { class: "facts" },

@@ -26,19 +26,34 @@ function makeChainage(format, length) {
     return label(value + distance - at, decimals);
   }
 
+  function typedValue(typed) {
+    const match = /^\s*(-|−)?(?:(\d+)\s*\+\s*)?(\d+(?:\.\d*)?)\s*$/.exec(typed);
+    if (!match) return null;
+    const size = (match[2] ? Number(match[2]) * base : 0) + Number(match[3]);
+    return ((match[1] ? -1 : 1) * size) / perMeter;
+  }
+
   // A label can stand twice where an equation runs back: every place that carries it is returned.
   function distances(typed) {
-    const match = /^\s*(-|−)?(?:(\d+)\s*\+\s*)?(\d+(?:\.\d*)?)\s*$/.exec(typed);
-    if (!match) return [];
-    const size = (match[2] ? Number(match[2]) * base : 0) + Number(match[3]);
-    const value = ((match[1] ? -1 : 1) * size) / perMeter;
+    const value = typedValue(typed);
     const found = [];
+    if (value === null) return found;
     breaks.forEach(([at, start], i) => {
       const end = i + 1 < breaks.length ? breaks[i + 1][0] : length;
       const distance = at + value - start;
       if (distance >= at - 0.05 && distance <= end + 0.05) found.push(Math.min(Math.max(distance, 0), length));
     });
     return found;
+  }
+
+  // The equation that swallows a typed chainage, in words; null where none does.
+  function swallowedBy(typed) {
+    const value = typedValue(typed);
+    for (let i = 1; value !== null && i < breaks.length; i += 1) {
+      const back = breaks[i - 1][1] + breaks[i][0] - breaks[i - 1][0];
+      if (value > back && value < breaks[i][1]) return `${label(back, 1)} = ${label(breaks[i][1], 1)}`;
+    }
+    return null;
   }
 
   // Pegs at round chainages between two distances, one list for the plan and the profile.
@@ -62,5 +77,5 @@ function makeChainage(format, length) {
     return Math.max(factor * power, 1) / perMeter;
   }
 
-  return { text, distances, ticks, spacing, equations: breaks.slice(1).map(([at]) => at), base };
+  return { text, distances, swallowedBy, ticks, spacing, equations: breaks.slice(1).map(([at]) => at), base };
 }

@@ -63,8 +63,10 @@ function makeColors(data) {
   const { steps, cells, legend } = data;
   const ramp = legend.ramp;
   const rampClass = (percent) => ramp.findIndex((item) => percent < item.below);
-  // A share that is mostly "not assessed" says nothing about unsuitable soil; zero would look like good news.
-  const unsuitableStep = (step) => (steps.p3[step] >= 50 || steps.p2[step] < 0 ? ramp.length : rampClass(steps.p2[step]));
+  // A step that is not assessed for want of data, or mostly not assessed, says nothing about unsuitable soil; zero
+  // would look like good news.
+  const isBlank = (step) => steps.p3[step] >= 50 || steps.p2[step] < 0 || (steps.suitability[step] === 3 && steps.evidence[step] === 2);
+  const unsuitableStep = (step) => (isBlank(step) ? ramp.length : rampClass(steps.p2[step]));
   // Soil that is not determined may have its own symbol among the groups; it is one class, not two.
   const undetermined = legend.groups.findIndex((item) => item.symbol === legend.unknown.symbol);
   const unknown = undetermined < 0 ? legend.groups.length + 1 : undetermined;

@@ -102,6 +102,10 @@ function readData() {
   });
   padEnds(data.ground, data.length);
   data.hasFormation = steps.formation.some((level) => level !== null);
+  // A formation that was read may still be of no use: without ground levels nobody can tell cut from fill.
+  const given = data.summary.counts.formation;
+  data.formationGiven = data.hasFormation || Boolean(given && given.read);
+  data.groundKnown = data.ground.ground.some((level) => level); // drawn at 0 where nobody gave a level
 
   data.stepAt = (distance) => Math.min(Math.max(lastAtOrBelow(steps.from, distance), 0), steps.from.length - 1);
   data.columnAt = (distance) => Math.min(Math.max(lastAtOrBelow(cells.from, distance), 0), cells.from.length - 1);

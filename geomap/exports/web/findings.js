@@ -8,12 +8,23 @@ function makeFindings(data) {
   const severities = ["error", "warning", "note"];
   let chosen = "all";
   let limit = FIRST_ROWS;
+  let open = () => {};
 
   const where = (i) => joined([sourceText(findings.file[i], findings.sheet[i], findings.row[i]), findings.heading[i]], ", ");
   const tag = (i) => element("span", { class: `severity ${severities.includes(findings.severity[i]) ? findings.severity[i] : "note"}` }, findings.severity[i] || "note");
 
   function line(i) {
     return element("li", null, tag(i), " ", isolated((findings.topic[i] || "").replaceAll("_", " ")), ": found ", isolated(findings.found[i] || "nothing"), "; ", isolated(findings.advice[i] || ""), element("div", { class: "source" }, isolated(where(i))));
+  }
+
+  // A boring that the page knows is opened from here.
+  function boring(i) {
+    const name = findings.boring[i] || "";
+    const number = data.boringNumber.get(name);
+    if (number === undefined) return isolated(name);
+    const button = element("button", { type: "button", class: "link", title: "Open this boring" }, isolated(name));
+    button.addEventListener("click", () => open(number));
+    return button;
   }
 
   function row(i) {
@@ -23,7 +34,7 @@ function makeFindings(data) {
       null,
       cell("Severity", tag(i)),
       cell("Where", isolated(where(i))),
-      cell("Boring, sample", isolated(findings.boring[i] || ""), " ", isolated(findings.sample[i] || "")),
+      cell("Boring, sample", boring(i), " ", isolated(findings.sample[i] || "")),
       cell("Found", isolated(findings.found[i] || "nothing")),
       cell("Allowed", isolated(findings.allowed[i] || "")),
       cell("Action", (findings.action[i] || "").replaceAll("_", " ")),
@@ -59,6 +70,9 @@ function makeFindings(data) {
   return {
     total,
     line,
+    onOpen(listener) {
+      open = listener;
+    },
     of(name) {
       const rows = [];
       for (let i = 0; i < count; i += 1) if (findings.boring[i] === name) rows.push(i);

@@ -17,7 +17,9 @@ function drawLegend(mode, colors, data) {
   const zone = data.hasFormation && data.corridor.zoneDepth ? [["zone", "base of design zone"]] : [];
   const leftOut = data.borings.used.includes(0) ? [["hole out", "left out"]] : [];
   const doubt = mode.strength ? element("li", { class: "doubt" }, element("i", { class: "key fade" }), element("span", null, "pale and without hatch: less sure")) : null;
-  fill("legend", ...items, doubt);
+  const judges = mode === colors.modes.suitability || mode === colors.modes.unsuitable;
+  const limits = judges && data.summary.limits ? element("li", { class: "limits" }, element("span", null, "Verdicts: ", isolated(data.summary.limits))) : null;
+  fill("legend", ...items, doubt, limits);
   fill("line-keys", ...[["ground", "ground"], ...formation, ...zone].map(key));
   fill("plan-keys", ...[["hole", "boring"], ...leftOut].map(key));
 }

@@ -186,13 +186,18 @@ function makePlan(map, layers, data, colors, chainage, place) {
   map.on("zoomend moveend", relabel);
   map.on("move", labels.frame);
 
+  const leastZoom = map.getMinZoom();
   // Until the reader moves the plan it keeps showing the whole line, whatever room it is given.
   let moved = false;
   map.on("dragstart", () => { moved = true; });
   map.getContainer().addEventListener("wheel", () => { moved = true; });
   map.getContainer().addEventListener("click", () => { moved = true; });
   // Clear of the buttons on the right, the scale and the signs below.
-  const fit = () => map.fitBounds(bounds, { animate: false, paddingTopLeft: [40, 22], paddingBottomRight: [60, 40] });
+  const fit = () => {
+    map.setMinZoom(leastZoom);
+    map.fitBounds(bounds, { animate: false, paddingTopLeft: [40, 22], paddingBottomRight: [60, 40] });
+    map.setMinZoom(Math.max(map.getZoom() - 1, leastZoom)); // farther out the grid would end
+  };
   let screen = null; // what the screen showed when printing began
   const pan = (point) => {
     moved = true;

@@ -148,7 +148,7 @@ function makePlanLabels(map, { data, chainage, pointAt, borings, place, runs }) 
       const b = ends[i + 1];
       if ((a[across] - edge) * (b[across] - edge) > 0 || a[across] === b[across]) continue;
       const at = a[along] + ((b[along] - a[along]) * (edge - a[across])) / (b[across] - a[across]);
-      return at > 60 && at < limit - 40 ? at : null;
+      return at > 60 && at < limit - (axis === "N" ? 66 : 40) ? at : null; // the scale bar stands in the corner
     }
     return null;
   }

@@ -1,7 +1,7 @@
 // The profile as a whole: draws its parts in order, keeps the visible stretch, and marks the place looked at.
 
 function makeProfile(nodes, data, colors, chainage, lengths, place) {
-  const { canvas, cursorCanvas, overviewCanvas, exaggeration } = nodes;
+  const { canvas, cursorCanvas, overviewCanvas, exaggeration, part } = nodes;
   const context = canvas.getContext("2d");
   const over = cursorCanvas.getContext("2d");
   const scale = makeProfileScale(data);
@@ -56,6 +56,9 @@ function makeProfile(nodes, data, colors, chainage, lengths, place) {
     onView(scale.from, scale.to);
     overview.draw(colors.modes.suitability.step && data.hasFormation ? colors.modes.suitability : mode);
     exaggeration.textContent = `Vertical exaggeration ${scale.exaggeration().toFixed(scale.exaggeration() < 10 ? 1 : 0)}`;
+    // On a phone the profile begins with a part of the line, which must be said.
+    part.hidden = scale.width > NARROW || scale.to - scale.from >= data.length - 1e-6;
+    part.textContent = `${chainage.text(scale.from, 0)} to ${chainage.text(scale.to, 0)} of ${lengths.long(data.length)}: drag for more`;
     drawn = true;
     drawCursor();
   }

@@ -2,6 +2,8 @@
 
 const LEAST_STRETCH = 40; // meters: closer than this there is nothing more to see
 const BAND_HEIGHT = 17;
+const NARROW = 520; // pixels
+const MOST_EXAGGERATION = 100; // on a narrow screen, to begin with: steeper than that the ground is a picket fence
 
 // Paper has finer points than most screens.
 function pixelRatio() {
@@ -17,7 +19,7 @@ function makeProfileScale(data) {
   scale.resize = (width, height) => {
     scale.width = width;
     scale.height = height;
-    const narrow = width < 520;
+    const narrow = width < NARROW;
     scale.bands = data.hasFormation ? ["cutFill", "suitability", "evidence"] : ["evidence"];
     scale.nameRows = narrow ? 2 : 3;
     scale.left = narrow ? 62 : 74;
@@ -87,4 +89,13 @@ function makeProfileScale(data) {
   };
   scale.bandTop = (row) => scale.bottom + 4 + row * BAND_HEIGHT;
   return scale;
+}
+
+// How much of the line a narrow profile begins with: all of it where that is not too steep.
+function firstStretch(canvas, scale) {
+  const whole = scale.to;
+  scale.resize(canvas.clientWidth, canvas.clientHeight);
+  scale.show(0, whole);
+  for (let to = whole; scale.width <= NARROW && scale.exaggeration() > MOST_EXAGGERATION && to > 4 * LEAST_STRETCH; to *= 0.8) scale.show(0, to);
+  return scale.to;
 }

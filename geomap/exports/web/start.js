@@ -8,7 +8,7 @@
   const place = makePlace(data);
   const colors = makeColors(data);
   const byId = (id) => document.getElementById(id);
-  const nodes = { canvas: byId("profile"), cursorCanvas: byId("profile-cursor"), overviewCanvas: byId("overview"), exaggeration: byId("exaggeration") };
+  const nodes = { canvas: byId("profile"), cursorCanvas: byId("profile-cursor"), overviewCanvas: byId("overview"), exaggeration: byId("exaggeration"), part: byId("part") };
 
   const plan = makePlan(plan_map, { grid: plan_grid, line: plan_line, borings: plan_borings }, data, colors, chainage, place);
   const profile = makeProfile(nodes, data, colors, chainage, lengths, place);
@@ -38,26 +38,18 @@
     profile.show(0, data.length);
     plan.showWhole();
   });
+  if (!data.groundKnown) {
+    // Without ground levels there is nothing to plot but depths.
+    byId("vertical").value = "depth";
+    byId("vertical").disabled = true;
+    profile.byDepth(true);
+  }
   byId("vertical").addEventListener("change", (event) => profile.byDepth(event.target.value === "depth"));
 
-  for (const name of data.borings.name) byId("places").append(element("option", { value: name }));
-  byId("go-to").addEventListener("submit", (event) => {
-    event.preventDefault();
-    const typed = byId("go-to-place").value.trim();
-    const found = chainage.distances(typed);
-    const boring = data.boringNumber.get(typed);
-    const answer = byId("go-to-answer");
-    answer.textContent = "";
-    if (boring !== undefined) {
-      place.openBoring(boring, "go");
-      if (data.borings.distance[boring] !== null) profile.panTo(data.borings.distance[boring]);
-      plan.panToBoring(boring);
-    } else if (found.length) {
-      place.hold(found[0], null, "go");
-      profile.panTo(found[0]);
-      plan.panTo(found[0]);
-      if (found.length > 1) answer.textContent = `This chainage stands ${found.length} times; the first is shown.`;
-    } else answer.textContent = `No such chainage or boring. The line runs from ${chainage.text(0)} to ${chainage.text(data.length)}.`;
+  const openBoringAt = listenToGoTo(data, chainage, profile, plan, place);
+  findings.onOpen((number) => {
+    byId("views").scrollIntoView({ block: "start" });
+    openBoringAt(number, "go");
   });
 
   let openBoring = null;
@@ -93,7 +85,7 @@
   }
   color();
   plan.resize(); // the legend has just taken its room
-  profile.show(0, data.length);
+  profile.show(0, firstStretch(nodes.canvas, profile.scale));
   new ResizeObserver(resize).observe(byId("views"));
   printSheet(plan, profile, place);
   requestAnimationFrame(() => {

@@ -187,7 +187,7 @@ function makeStretchCard(data, colors, chainage, lengths) {
         element(
           "dl",
           { class: "facts" },
-          data.hasFormation ? formation(step, distance) : row("Ground", `level ${lengths.text(data.groundAt(distance))}`),
+          data.hasFormation ? formation(step, distance) : row("Ground", data.groundKnown ? `level ${lengths.text(data.groundAt(distance))}` : "level not known"),
           material(step),
           group >= 0 ? row("Mostly", swatch(legend.groups[group], legend.groups[group].symbol), ` ${legend.groups[group].name}${steps.probability[step] < 0 ? "" : `, ${steps.probability[step]}%`}`) : null,
           steps.aashto[step] ? row("AASHTO", isolated(steps.aashto[step])) : null,

@@ -22,14 +22,22 @@ function drawSummary(data, lengths, chainage, findings) {
   }
   drawLengths();
   fill("statement", summary.statement ? isolated(summary.statement) : null, data.plan.note ? element("span", null, " ", isolated(data.plan.note)) : null);
+  // On the screen the limits stand beside the legend of the verdicts; paper has one legend for good.
+  if (summary.limits && data.hasFormation) document.getElementById("statement").append(element("span", { class: "on-paper" }, " Verdicts: ", isolated(summary.limits), "."));
   fill("cautions", ...corridor.cautions.map((text) => element("li", null, isolated(text))));
+
+  function withoutVerdicts() {
+    if (!data.formationGiven) return "No formation was given: soil groups by depth only.";
+    const why = data.groundKnown ? "no level of it lies on the line" : summary.groundLevels || "ground not known";
+    return `A formation was given, but cut and fill cannot be told and the design zone is not assessed: ${why}.`;
+  }
 
   // Length by verdict and evidence: one bar for all, and the figures under it.
   function drawLengths() {
     const box = document.getElementById("lengths");
     const total = corridor.length || 1;
     if (!data.hasFormation) {
-      fill("lengths", element("p", { class: "quiet" }, "No formation was given: soil groups by depth only."));
+      fill("lengths", element("p", { class: "quiet" }, isolated(withoutVerdicts())));
       return;
     }
     const rows = summary.lengths.map((parts, k) => ({ item: legend.suitability[k], parts, sum: parts.reduce((a, b) => a + b, 0) })).filter((row) => row.sum > 0);

@@ -44,7 +44,7 @@ function joined(parts, separator) {
 
 // Where a value was read: what a person needs to open the right row of the right file.
 function sourceText(file, sheet, row) {
-  return joined([file, sheet ? `sheet ${sheet}` : "", row ? `row ${row}` : ""], ", ");
+  return joined([file, sheet ? `sheet ${sheet}` : "", row ? `${String(row).includes(",") ? "rows" : "row"} ${row}` : ""], ", ");
 }
 
 function makeLengths(unit) {

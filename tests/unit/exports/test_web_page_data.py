@@ -129,7 +129,48 @@ def test_every_named_weight_leads_to_its_sample_and_lab_sheet(results: Results, 
         row = table.loc[(table["step"] == step) & (table["lab_sheet"] == sheet)].iloc[0]
         assert packed["weight"][at] == pytest.approx(1000 * row["weight"], abs=0.5)
         assert packed["boring"]["w"][packed["boring"]["i"][record]] == row["boring"]
-        assert packed["row"][record] == row["row_number"]
+        assert packed["row"]["w"][packed["row"]["i"][record]] == str(row["row_number"])
+
+
+def test_the_rows_of_one_specimen_are_one_line_with_one_weight(results: Results) -> None:
+    """Constructed: two test rows of one specimen in steps 1 and 2, and a logged layer without a specimen."""
+    rows = [
+        {
+            "step": step,
+            "specimen": specimen,
+            "boring": "BH-1",
+            "sample": sample,
+            "top_depth_m": top,
+            "base_depth_m": top + 0.5,
+        }
+        | {"weight": weight, "lab_sheet": sheet, "file": "samples.csv", "sheet": None, "row_number": row}
+        for step in (1, 2)
+        for specimen, sample, top, weight, sheet, row in (
+            (7, "S1", 1.0, 0.6, "LAB-1", 4),
+            (7, "S1 index", 1.2, 0.6, "LAB-2", 9),
+            (pd.NA, None, 3.0, 0.3, None, 11),
+        )
+    ]
+    packed = trace(with_tables(results, trace=pd.DataFrame(rows)))
+    assert packed["count"][:3] == [2, 2, 0]
+    assert packed["weight"] == [600, 300, 600, 300]
+    assert packed["record"] == [0, 1, 0, 1]
+    assert packed["sample"] == {"w": ["S1, S1 index"], "i": [0, -1]}
+    assert packed["labSheet"] == {"w": ["LAB-1, LAB-2"], "i": [0, -1]}
+    assert packed["row"] == {"w": ["4, 9", "11"], "i": [0, 1]}
+    assert packed["boring"] == {"w": ["BH-1"], "i": [0, 0]}
+    assert (packed["top"], packed["base"]) == ([1, 3], [1.7, 3.5])
+
+
+def test_whole_percents_of_one_bar_are_a_hundred_together(results: Results, data: dict[str, Any]) -> None:
+    columns = [shares(data["steps"][f"p{k}"]) for k in range(len(SUITABILITY))]
+    for at in range(STEPS):
+        assert sum(column[at] for column in columns) == pytest.approx(1.0)
+    for cell in range(STEPS * THICKNESSES):
+        assert sum(odds_of(data, cell).values()) == pytest.approx(1.0)
+    thirds = results.tables["subgrade"].assign(p_suitable=1 / 3, p_treat=1 / 3, p_unsuitable=1 / 3, p_not_assessed=0.0)
+    steps = page_data(with_tables(results, subgrade=thirds))["steps"]
+    assert [shares(steps[f"p{k}"])[0] for k in range(4)] == [0.34, 0.33, 0.33, 0.0]
 
 
 def test_without_a_formation_nothing_is_judged_and_nothing_fails(results: Results) -> None:

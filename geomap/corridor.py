@@ -6,6 +6,7 @@ file of ``geomap new``, from the same declarations; `corridor_checks` compares i
 
 from __future__ import annotations
 
+import os
 import tomllib
 from collections.abc import Collection, Mapping
 from pathlib import Path
@@ -254,7 +255,8 @@ def read_corridor(path: str | Path, choices: Mapping[str, Collection[str]]) -> C
         found, what is allowed, and the nearest known word.
     """
     given = Path(path)
-    file = given / FILE_NAME if given.is_dir() else given
+    is_folder = os.path.isdir(given)  # noqa: PTH112 - a name that is too long is no folder, and no error
+    file = given / FILE_NAME if is_folder else given
     try:
         text = file.read_text("utf-8")
         data = tomllib.loads(text)
@@ -262,7 +264,7 @@ def read_corridor(path: str | Path, choices: Mapping[str, Collection[str]]) -> C
         raise UsageError(
             problem(
                 str(given),
-                f"a folder without {FILE_NAME}" if given.is_dir() else "no such file",
+                f"a folder without {FILE_NAME}" if is_folder else "no such file",
                 f"a corridor file or a folder with {FILE_NAME}",
                 "try `geomap new FOLDER`",
             )
@@ -309,7 +311,8 @@ def _problems(corridor: Corridor, written: Written, choices: Mapping[str, Collec
 
 
 def _folder_problems(corridor: Corridor, written: Written) -> list[str]:
-    if not corridor.output_folder.exists() or corridor.output_folder.is_dir():
+    folder = corridor.output_folder
+    if not os.path.exists(folder) or os.path.isdir(folder):  # noqa: PTH110, PTH112 - as above
         return []
     return [problem(written.place("outputs", "folder"), corridor.outputs.folder, "a folder", "name another one")]
 

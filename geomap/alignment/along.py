@@ -122,8 +122,10 @@ def levels_along(
         design, found = levels_from_table(rows, chainage, "formation")
         given, width = design.level_at(distance_m), design.width_at(distance_m, width_m)
         formation = formation_level(given, drawing.reference, drawing.thickness_m, drawing.pipe_diameter_m, ground)
-        parts += [found.fillna({"file": file}), _short(file, np.isnan(formation)), _far(file, ground - formation)]
-        if not is_known:
+        parts += [found.fillna({"file": file}), _short(file, np.isnan(formation))]
+        if is_known:
+            parts.append(_far(file, ground - formation))
+        else:
             parts.append(NEEDS_GROUND.row("level_m", "no ground level", file=file))
             formation = np.full(len(distance_m), np.nan)
     return Along(ground, formation, width, basis, is_known, together(parts))

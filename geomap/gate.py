@@ -141,7 +141,7 @@ def judge(taken: intake.Intake, job: Job) -> pd.DataFrame:
     described = describe(samples, gradations, part.join_tolerance_m, organic_limit_pct=part.peat_organic_pct)
     alone = describe(layers, gradations.iloc[:0], None)
     alone["specimen"] += len(described)
-    properties = pd.concat([described, alone])
+    properties = pd.concat([described, alone.astype(described.dtypes)])
     soils = pd.concat([samples.assign(is_layer=False), layers.assign(is_layer=True)])
     said = ["origin", "unit"]  # what one row of a specimen says holds for all of it
     soils[said] = soils[said].groupby(properties["specimen"]).transform("first")

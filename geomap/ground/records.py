@@ -66,7 +66,8 @@ def with_log(samples: pd.DataFrame, strata: pd.DataFrame) -> pd.DataFrame:
 
 def layer_rows(strata: pd.DataFrame, samples: pd.DataFrame, first: int) -> pd.DataFrame:
     """Return the logged layers in the columns of `samples`, their index counting from `first`."""
-    return strata.reindex(columns=samples.columns).set_axis(pd.RangeIndex(first, first + len(strata)))
+    rows = strata.reindex(columns=samples.columns).astype(samples.dtypes)
+    return rows.set_axis(pd.RangeIndex(first, first + len(strata)))
 
 
 def one_per_specimen(soils: pd.DataFrame) -> pd.DataFrame:

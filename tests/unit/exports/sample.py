@@ -11,10 +11,10 @@ import json
 from collections.abc import Sequence
 
 import numpy as np
-from scipy import sparse
 import pandas as pd
 import shapely
 from numpy.typing import NDArray
+from scipy import sparse
 
 from geomap.results import Results
 from geomap.tables import schema

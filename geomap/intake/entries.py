@@ -20,7 +20,6 @@ from geomap.tables.findings import Check
 
 USED = "used"
 LEFT_OUT = "left out"
-STATUS_COLUMNS = ("status", "reason")
 
 Flags = NDArray[np.bool_]
 Texts = NDArray[np.object_]

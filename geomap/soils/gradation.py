@@ -18,7 +18,7 @@ from geomap.soils.records import Flags, Floats, number
 # How a percent passing was found.
 MEASURED, INTERPOLATED, BOUNDED, MISSING = 0, 1, 2, 3
 
-GRAVEL_MM, SAND_MM, COBBLE_MM, BOULDER_MM = 4.75, 0.075, 75.0, 300.0  # lower limits, ASTM D2487-17 section 3
+COBBLE_MM, BOULDER_MM = 75.0, 300.0  # lower limits, ASTM D2487-17 section 3
 SAME_SIZE = 1e-6  # relative; sizes closer than this are one sieve
 # Results are reported in whole percent (ASTM D6913 Method A, from memory): a rise by up to that much toward a finer
 # size is rounding, and the coarser result stands for both, as a sieve stands for the hydrometer that follows it.

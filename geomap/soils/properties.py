@@ -24,7 +24,6 @@ NAMED_MM = (4.75, 2.0, 0.425, 0.075, 0.05, 0.002)  # limits of ASTM D2487, AASHT
 D_TARGETS = {"d10_mm": 10.0, "d30_mm": 30.0, "d60_mm": 60.0}
 REPORTED = (*D_TARGETS, "cu", "cc")
 TESTED = (*REPORTED, *LIMITS, "liquid_limit_oven_dried_pct", "organic_pct", "cobbles_pct", "boulders_pct")
-SILT_BY_EYE, CLAY_BY_EYE = 1, 2
 GREATEST_CLEAN = 12.5  # percent fines that still round to 12 (ASTM D2487-17, Table 1)
 
 _OTHER_SPELLINGS = {"GM-GC": "GC-GM", "SM-SC": "SC-SM", "ML-CL": "CL-ML"}  # order of older texts

@@ -8,7 +8,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-from geomap import inputs, layers, registry
+from geomap import layers, registry
 from geomap.errors import InputError, UsageError, problem
 from geomap.exports import EXPORTS
 from geomap.exports.publish import publish, staging
@@ -37,8 +37,8 @@ def run_and_write(path: str | Path, tell: Tell = silent) -> tuple[Results, list[
     OutputInUseError
         An old output is held by another program, or the folder cannot be written.
     """
-    job = inputs.prepare(path)
-    results = run(path, tell)
+    gate = check(path, tell)
+    job, results = gate.job, answer(gate, tell)
     tell("writing")
     with staging(job.corridor.output_folder) as folder:
         place = job.place("outputs", "products")
@@ -57,7 +57,17 @@ def run(path: str | Path, tell: Tell = silent) -> Results:
     InputError
         The input blocks; the text names every finding that does.
     """
-    gate = check(path, tell)
+    return answer(check(path, tell), tell)
+
+
+def answer(gate: Gate, tell: Tell = silent) -> Results:
+    """Return the results for an input that was read and judged.
+
+    Raises
+    ------
+    InputError
+        The input blocks; the text names every finding that does.
+    """
     blocking = gate.findings[gate.findings["action"] == "block"]
     if len(blocking):
         raise InputError("\n".join(layers.sentences(blocking)))
@@ -65,24 +75,25 @@ def run(path: str | Path, tell: Tell = silent) -> Results:
     sheet = lay_out(gate)
     default, given = Ranges(), gate.job.corridor.estimation
     ranges = Ranges(given.horizontal_range_m or default.horizontal, given.vertical_range_m or default.vertical)
-    answer = weigh(gate, sheet, ranges)
-    judged = tally(answer, gate)
+    weighed = weigh(gate, sheet, ranges)
+    judged = tally(weighed, gate)
     tell("drawing")
     scale = limits(gate)
-    draws = draw(gate, sheet, ranges, judged, scale)
+    fill = imported(gate)
+    draws = draw(gate, sheet, ranges, judged, scale, fill)
     holes = gate.located(gate.taken.used("borings")[["boring"]])
-    table = steps.step_table(sheet, judged, draws, imported(gate), holes, scale)
+    table = steps.step_table(sheet, judged, draws, fill, holes, scale)
     trace_weights = steps.trace_zone(sheet).mean_weights(judged.weights)
     found = layers.Found(
         sheet=sheet,
         ranges=layers.ranges_in_words(ranges, gate.job.corridor),
         steps=table,
-        cells=cells.cell_table(sheet, judged.odds, judged.probability, scale, answer.evidence),
-        trace=subgrade.trace_table(trace_weights, answer.records["specimen"].to_numpy(int), gate.judged),
+        cells=cells.cell_table(sheet, judged.odds, judged.probability, scale, weighed.evidence),
+        trace=subgrade.trace_table(trace_weights, weighed.records["specimen"].to_numpy(int), gate.judged),
         draws=draws,
         limits=scale.in_words,
         weights=judged.weights,
-        records=answer.records,
+        records=weighed.records,
     )
     return layers.results(gate, found, SCALE.words)
 
@@ -110,9 +121,9 @@ def weigh(gate: Gate, sheet: cells.Sheet, ranges: Ranges) -> Estimate:
     return estimate(specimens, layers_, is_answered.to_numpy(bool), grid, ranges)
 
 
-def tally(answer: Estimate, gate: Gate) -> steps.Judged:
+def tally(weighed: Estimate, gate: Gate) -> steps.Judged:
     """Count symbols, verdicts and rules of the records in every cell."""
-    kinds, ensemble = answer.records, answer.ensemble
+    kinds, ensemble = weighed.records, weighed.ensemble
     odds = {}
     for system in gate.job.systems:
         symbols = (NOT_DETERMINED, *system.SYMBOLS)
@@ -122,7 +133,7 @@ def tally(answer: Estimate, gate: Gate) -> steps.Judged:
     names = by_rule["rule"] + "\n" + by_rule["suitability"]
     shares = ensemble.tally(membership(kinds["rule"] + "\n" + kinds["suitability"], tuple(names)))
     behind = (by_rule["rule"].tolist(), by_rule["suitability"].tolist(), shares)
-    return steps.Judged(odds, probability, behind, answer.evidence, ensemble.weights)
+    return steps.Judged(odds, probability, behind, weighed.evidence, ensemble.weights)
 
 
 def membership(names: pd.Series, classes: tuple[str, ...]) -> NDArray[np.float64]:
@@ -134,7 +145,9 @@ def membership(names: pd.Series, classes: tuple[str, ...]) -> NDArray[np.float64
     return rows
 
 
-def draw(gate: Gate, sheet: cells.Sheet, ranges: Ranges, judged: steps.Judged, scale: Scale) -> NDArray[np.int8]:
+def draw(
+    gate: Gate, sheet: cells.Sheet, ranges: Ranges, judged: steps.Judged, scale: Scale, fill: steps.Fill
+) -> NDArray[np.int8]:
     """Draw the verdict of the design zone of each step, jointly along the line."""
     settings, profile = gate.job.corridor.estimation, gate.job.corridor.profile
     shape = sheet.is_used.shape
@@ -143,7 +156,7 @@ def draw(gate: Gate, sheet: cells.Sheet, ranges: Ranges, judged: steps.Judged, s
     zone = subgrade.natural_zone(sheet)
     draws = zone_draws(judged.probability.reshape(*shape, -1), zone.in_zone, fields, scale)
     material, unknown = subgrade.subgrade_material(sheet), scale.column("not assessed")
-    return subgrade.with_fill(draws, material, imported(gate).verdict, unknown, scale)
+    return subgrade.with_fill(draws, material, fill.verdict, unknown, scale)
 
 
 def imported(gate: Gate) -> steps.Fill:
